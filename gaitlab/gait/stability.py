@@ -21,10 +21,10 @@ def projected(centre_m: FloatArray, slope_rad: float) -> FloatArray:
 def stability_margins(contact_m: FloatArray, loaded: BoolArray, plumb_m: FloatArray) -> FloatArray:
     """Signed distance of the plumb point from the edge of the support polygon, (T,): inside +, outside −, nan in the air.
 
-    The polygon is the convex hull of the loaded contacts, `contact_m` (T, G, 2 or 3), `loaded` (T, G); its signed distance is
-    min over directions u of h(u) − u·c with the support function h(u) = max u·p. The least is met at the normal of an
-    edge or, outside a corner, along the line to it, so those directions are tried and no others are needed. McGhee & Frank (1968), Math. Biosci. 3,
-    331–351, define the static stability margin so (the smallest over a cycle is the gait's).
+    The polygon is the convex hull of the loaded contacts, `contact_m` (T, G, 2 or 3), `loaded` (T, G). Its signed distance
+    is min over directions u of h(u) − u·c with the support function h(u) = max u·p. The least is met at the normal of an
+    edge or, outside a corner, along the line to it, so those directions are tried and no others are needed. McGhee &
+    Frank (1968), Math. Biosci. 3, 331–351, define the static stability margin so; the smallest over a cycle is the gait's.
 
     >>> import numpy as np
     >>> square = np.array([[[-1.0, -1.0], [1.0, -1.0], [1.0, 1.0], [-1.0, 1.0]]])
