@@ -1,0 +1,69 @@
+"""Rigid-body numbers of a body model with every joint at zero: places, mass matrix, what its damper may do in one step."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from gaitlab.body.model import BodyModel
+
+FloatArray = NDArray[np.float64]
+
+
+def link_origins(model: BodyModel) -> FloatArray:
+    """Origins (links, 3) of all link frames in the root's frame, joints at zero."""
+    origins = np.zeros((len(model.links), 3))
+    for index, link in enumerate(model.links):
+        if link.joint is not None:
+            origins[index] = origins[link.parent] + link.joint.origin_m
+    return origins
+
+
+def ancestry(model: BodyModel) -> NDArray[np.bool_]:
+    """(links, J): whether joint j lies between the root and the link."""
+    above = np.zeros((len(model.links), len(model.links) - 1), dtype=bool)
+    for index, link in enumerate(model.links):
+        if link.joint is not None:
+            above[index] = above[link.parent]
+            above[index, index - 1] = True
+    return above
+
+
+def centre_of_mass(model: BodyModel) -> FloatArray:
+    """Centre of mass (3,) in the root's frame, joints at zero."""
+    masses = np.array([link.mass_kg for link in model.links])
+    centres = link_origins(model) + np.array([link.com_m for link in model.links])
+    return np.asarray(masses @ centres / masses.sum())
+
+
+def jacobian(model: BodyModel, link: int, point: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Linear and angular Jacobian (3, 6 + J) at `point` of a link: columns are root translation, root turn, joints."""
+    linear, angular = np.zeros((3, 6 + len(model.joints))), np.zeros((3, 6 + len(model.joints)))
+    linear[:, :3], angular[:, 3:6] = np.eye(3), np.eye(3)
+    linear[:, 3:6] = np.cross(np.eye(3), point).T
+    origins, above = link_origins(model), ancestry(model)[link]
+    for index, joint in enumerate(model.joints):
+        if above[index] and joint.kind == "prismatic":
+            linear[:, 6 + index] = joint.axis
+        elif above[index]:
+            linear[:, 6 + index] = np.cross(joint.axis, point - origins[index + 1])
+            angular[:, 6 + index] = joint.axis
+    return linear, angular
+
+
+def mass_matrix(model: BodyModel, inertia_factor: float) -> FloatArray:
+    """Mass matrix (6 + J, 6 + J), joints at zero: Σ m JᵥᵀJᵥ + J_ωᵀ I J_ω over the links."""
+    size = 6 + len(model.joints)
+    total = np.zeros((size, size))
+    for index, origin in enumerate(link_origins(model)):
+        link = model.links[index]
+        linear, angular = jacobian(model, index, origin + link.com_m)
+        total += link.mass_kg * linear.T @ linear + angular.T @ link.inertia(inertia_factor) @ angular
+    return total
+
+
+def free_joint_mass(model: BodyModel, inertia_factor: float) -> FloatArray:
+    """Mass matrix (J, J) that the joints feel with the root floating free: M_jj − M_jb M_bb⁻¹ M_bj."""
+    total = mass_matrix(model, inertia_factor)
+    root, cross, joints = total[:6, :6], total[:6, 6:], total[6:, 6:]
+    return np.asarray(joints - cross.T @ np.linalg.solve(root, cross))
