@@ -1,0 +1,78 @@
+"""A fault of a robot file as a value that knows its place: file, table, key and line are put into words here."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from gaitlab.errors import RobotFileError
+
+Place = tuple[str | int, ...]  # keys and array positions (from 0) down to the value, e.g. ("body", "leg", 2, "at_mm")
+
+SHOWN_LENGTH = 80  # characters of a wrong value that a message quotes; chosen by us
+
+
+@dataclass(frozen=True)
+class Fault:
+    """What is wrong at `place`: `rule` completes "<key> must …", `got` is the value as quoted, `fix` how it is usually put right."""
+
+    place: Place
+    rule: str
+    got: str = ""
+    fix: str = ""
+
+    def text(self, source: str, line: int | None = None) -> str:
+        """The one message a user sees.
+
+        >>> Fault(("ring", "stages"), "be at least 1", "0").text("crawler.toml", 7)
+        'crawler.toml, line 7, table [ring]: stages must be at least 1, got 0'
+        """
+        *tables, key = self.place or ("file",)
+        head = source if line is None else f"{source}, line {line}"
+        if tables:
+            head += f", table {table_name(tuple(tables))}"
+        text = f"{head}: {key if isinstance(key, str) else ordinal(key)} must {self.rule}"
+        text += f", got {self.got}" if self.got else ""
+        return f"{text}; usual fix: {self.fix}" if self.fix else text
+
+
+class FaultError(RobotFileError):
+    """Carries a `Fault` from the check that found it to the reader, which knows the file's name and lines."""
+
+    def __init__(self, fault: Fault, source: str = "robot", line: int | None = None) -> None:
+        super().__init__(fault.text(source, line))
+        self.fault = fault
+
+
+def fail(place: Place, rule: str, got: object = None, fix: str = "") -> FaultError:
+    """The error to raise for a value at `place` that breaks `rule`; `got` is left out of the text when None."""
+    return FaultError(Fault(place, rule, "" if got is None else quoted(got), fix))
+
+
+def quoted(value: object) -> str:
+    """A wrong value as a message shows it: short, on one line, control characters escaped."""
+    if isinstance(value, dict):
+        return "a table"
+    if isinstance(value, list) and any(isinstance(item, dict) for item in value):
+        return "an array of tables"
+    text = str(value).lower() if isinstance(value, bool) else repr(value)
+    return text if len(text) <= SHOWN_LENGTH else text[: SHOWN_LENGTH - 3] + "..."
+
+
+def ordinal(position: int) -> str:
+    """An array position (from 0) as a person counts.
+
+    >>> ordinal(0)
+    'item 1'
+    """
+    return f"item {position + 1}"
+
+
+def table_name(place: Place) -> str:
+    """A table as it is written in the file, the item of an array of tables counted from 1.
+
+    >>> table_name(("body", "leg", 2))
+    '[body.leg] number 3'
+    """
+    shown = "[" + ".".join(str(part) for part in place if isinstance(part, str)) + "]"
+    positions = [part for part in place if isinstance(part, int)]
+    return shown + (" number " + ", ".join(str(p + 1) for p in positions) if positions else "")
