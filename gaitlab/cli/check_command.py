@@ -1,0 +1,68 @@
+"""gaitlab check: read a robot file and say what it will be."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+import click
+
+from gaitlab.cli.options import json_option, robot_argument
+from gaitlab.cli.output import print_facts, print_json, warn
+from gaitlab.robot.checks import require_odd_ring
+from gaitlab.robot.reader import RobotFile, read_robot
+from gaitlab.robot.totals import mass_kg
+from gaitlab.wiring.space import WiringSpace
+
+
+@click.command("check")
+@robot_argument
+@json_option
+def command(robot_path: Path, as_json: bool) -> None:
+    """Read a robot file and say what it will be.
+
+    Refused (exit 2): anything that breaks a rule of the file, and a ring that cannot oscillate. Legal but unlikely
+    numbers are named warnings.
+
+    \b
+      gaitlab check robots/tray_row5.toml
+      gaitlab check robots/tray_row5.toml --json
+    """
+    file = read_robot(robot_path)
+    require_odd_ring(file.robot)
+    facts = summary(file)
+    if as_json:
+        print_json(facts)
+        return
+    _print_human(facts)
+
+
+def summary(file: RobotFile) -> dict[str, Any]:
+    """What a robot file will be, keyed as --json prints it."""
+    robot = file.robot
+    space = WiringSpace.of(robot)
+    return {
+        "ok": True,
+        "name": robot.name,
+        "stages": robot.ring.stages,
+        "inlets": list(robot.inlets()),
+        "blocks": [block.name for block in robot.body.blocks],
+        "mass_g": mass_kg(robot) * 1e3,
+        "wirings": {"raw": space.raw, "distinct": space.distinct},
+        "warnings": list(file.warnings),
+    }
+
+
+def _print_human(facts: dict[str, Any]) -> None:
+    print_facts(
+        [
+            ("robot", facts["name"]),
+            ("ring stages", facts["stages"]),
+            ("inlets", " ".join(facts["inlets"])),
+            ("blocks", " ".join(facts["blocks"])),
+            ("mass", f"{facts['mass_g']:.4g} g without tubes and fittings"),
+            ("wirings", f"{facts['wirings']['raw']} in all, {facts['wirings']['distinct']} distinct"),
+        ]
+    )
+    for text in facts["warnings"]:
+        warn(text)
