@@ -37,11 +37,15 @@ class EngineSettings:
 class FeetState:
     """Feet at one instant, in the model's order: `position_m` (F, 3) of the middle of each foot, `velocity_m_s` (F, 3) there.
 
-    `normal_N` (F,) is the force of the ground on each foot across the ground plane, zero in the air.
+    `quaternion` (F, 4) x y z w is the orientation of the foot's link frame, `spin_rad_s` (F, 3) its turning rate in the
+    world (a round foot rolls: its sole slides with velocity + spin × (0, 0, −radius)). `normal_N` (F,) is the force of
+    the ground on each foot across the ground plane, zero in the air.
     """
 
     position_m: FloatArray
     velocity_m_s: FloatArray
+    quaternion: FloatArray
+    spin_rad_s: FloatArray
     normal_N: FloatArray
 
 
