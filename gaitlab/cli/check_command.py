@@ -12,6 +12,7 @@ from gaitlab.cli.output import print_facts, print_json, warn
 from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import RobotFile, read_robot
 from gaitlab.robot.totals import mass_kg
+from gaitlab.trust.tolerances import tolerances_of
 from gaitlab.wiring.space import WiringSpace
 
 
@@ -33,13 +34,18 @@ def command(robot_path: Path, as_json: bool) -> None:
     facts = summary(file)
     if as_json:
         print_json(facts)
-        return
-    _print_human(facts)
+    else:
+        _print_human(facts)
 
 
 def summary(file: RobotFile) -> dict[str, Any]:
-    """What a robot file will be, keyed as --json prints it."""
+    """What a robot file will be, keyed as --json prints it.
+
+    Raises InputError for a tolerance whose key leads to no number.
+    """
     robot = file.robot
+    if robot.tolerances:
+        tolerances_of(file.document, robot.tolerances)
     space = WiringSpace.of(robot)
     return {
         "ok": True,

@@ -15,7 +15,7 @@ from gaitlab.wiring.wiring import Wiring, wiring_from_text
 F = TypeVar("F", bound=Callable[..., Any])
 
 
-class Number(click.ParamType):
+class Number(click.FloatRange):
     """A finite number within bounds, in the unit that the option's name carries."""
 
     name = "number"
@@ -28,35 +28,18 @@ class Number(click.ParamType):
         below: float | None = None,
         at_most: float | None = None,
     ) -> None:
-        self._above, self._at_least, self._below, self._at_most = above, at_least, below, at_most
+        lowest, highest = (above if at_least is None else at_least), (below if at_most is None else at_most)
+        super().__init__(lowest, highest, min_open=above is not None, max_open=below is not None)
 
     def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> float:
-        """The number, or a usage error that says the rule."""
+        """The number, or a usage error that says the rule (NaN and infinities compare with nothing, so they are told first)."""
         try:
-            number = float(value)
-        except (TypeError, ValueError):
-            self.fail(f"must be a number, got {value!r}", param, ctx)
-        if not math.isfinite(number) or not self._within(number):
-            self.fail(f"must be {self._rule()}, got {value!r}", param, ctx)
-        return number
-
-    def _within(self, number: float) -> bool:
-        return (
-            (self._above is None or number > self._above)
-            and (self._at_least is None or number >= self._at_least)
-            and (self._below is None or number < self._below)
-            and (self._at_most is None or number <= self._at_most)
-        )
-
-    def _rule(self) -> str:
-        bounds = (
-            (self._above, "above"),
-            (self._at_least, "at least"),
-            (self._below, "below"),
-            (self._at_most, "at most"),
-        )
-        words = [f"{word} {bound:g}" for bound, word in bounds if bound is not None]
-        return " and ".join(words) or "a finite number"
+            finite = math.isfinite(float(value))
+        except (TypeError, ValueError, OverflowError):
+            finite = True  # not a number at all: the range type says so
+        if not finite:
+            self.fail(f"must be a finite number, got {value!r}", param, ctx)
+        return float(super().convert(value, param, ctx))
 
 
 class WholeNumber(click.IntRange):

@@ -6,7 +6,7 @@ from gaitlab.errors import InputError, must
 from gaitlab.robot.check_parts import check_bellows, check_supply, check_valves
 from gaitlab.robot.check_wiring import check_wiring
 from gaitlab.robot.faults import fail
-from gaitlab.robot.names import check_names
+from gaitlab.robot.names import chain_places, check_names
 from gaitlab.robot.records import Robot
 from gaitlab.robot.tree import check_tree
 
@@ -43,10 +43,9 @@ def _check_counts(robot: Robot) -> None:
         raise fail(("body", "block"), "hold at least one block")
     if len(robot.body.blocks) > BLOCKS_MAX:
         raise fail(("body", "block"), f"hold at most {BLOCKS_MAX} blocks", len(robot.body.blocks))
-    for kind, chains in (("leg", robot.body.legs), ("spine", robot.body.spines)):
-        for index, chain in enumerate(chains):
-            if not chain.units:
-                raise fail(("body", kind, index, "bellows"), "be given, or at least one unit", fix='bellows = "type"')
+    for place, chain in chain_places(robot):
+        if not chain.units:
+            raise fail((*place, "bellows"), "be given, or at least one unit", fix='bellows = "type"')
     inlets = len(robot.inlets())
     if not 1 <= inlets <= INLETS_MAX:
         raise fail(("body", "leg"), f"give the robot 1 to {INLETS_MAX} air inlets in all", inlets)

@@ -7,10 +7,12 @@ from collections.abc import Iterable, Iterator
 
 from gaitlab.robot.faults import Place, fail
 from gaitlab.robot.hints import suggestion
+from gaitlab.robot.parts import Leg, Payload, Skid, Spine
 from gaitlab.robot.records import Robot
 
-# Names end up in file names, circuit decks and the wiring on the command line: plain ASCII, no path, no "=". Chosen by us.
-_NAME = re.compile(r"[A-Za-z0-9_][A-Za-z0-9_.-]{0,63}")
+# Names end up in file names, circuit decks, dotted tolerance keys and the wiring on the command line: plain ASCII without
+# dots, slashes, blanks and "=". Chosen by us.
+_NAME = re.compile(r"[A-Za-z0-9_][A-Za-z0-9_-]{0,63}")
 RESERVED = ("open", "held")  # what an inlet may be tubed to besides an output
 
 Named = tuple[Place, str]
@@ -37,8 +39,8 @@ def check_names(robot: Robot) -> None:
 
 def _check_name(named: Named) -> None:
     place, name = named
-    if not _NAME.fullmatch(name) or ".." in name:
-        raise fail(place, "be a name of at most 64 letters a-z, digits, _ - and single dots", name)
+    if not _NAME.fullmatch(name):
+        raise fail(place, "be a name of at most 64 letters a-z, digits, _ and -", name)
     if name in RESERVED:
         raise fail(
             place, "be a name other than " + " and ".join(RESERVED), name, "these words stand for atmosphere and supply"
@@ -62,18 +64,30 @@ def _check_references(references: Iterable[Named], known: set[str], what: str) -
             )
 
 
+def chain_places(robot: Robot) -> Iterator[tuple[Place, Leg | Spine]]:
+    """Every chain of bellows with its place in the file."""
+    for i, leg in enumerate(robot.body.legs):
+        yield ("body", "leg", i), leg
+    for i, spine in enumerate(robot.body.spines):
+        yield ("body", "spine", i), spine
+
+
 def _inlets(robot: Robot) -> Iterator[Named]:
-    for kind, chains in (("leg", robot.body.legs), ("spine", robot.body.spines)):
-        for i, chain in enumerate(chains):
-            for j, unit in enumerate(chain.units):
-                yield ("body", kind, i, "unit", j, "inlet"), unit.inlet
-                if unit.opposed_inlet is not None:
-                    yield ("body", kind, i, "unit", j, "opposed_inlet"), unit.opposed_inlet
+    for place, chain in chain_places(robot):
+        for j, unit in enumerate(chain.units):
+            yield (*place, "unit", j, "inlet"), unit.inlet
+            if unit.opposed_inlet is not None:
+                yield (*place, "unit", j, "opposed_inlet"), unit.opposed_inlet
 
 
 def _block_references(robot: Robot) -> Iterator[Named]:
     body = robot.body
-    for kind, parts in (("leg", body.legs), ("skid", body.skids), ("payload", body.payloads)):
+    groups: dict[str, tuple[Leg | Skid | Payload, ...]] = {
+        "leg": body.legs,
+        "skid": body.skids,
+        "payload": body.payloads,
+    }
+    for kind, parts in groups.items():
         yield from ((("body", kind, i, "block"), part.block) for i, part in enumerate(parts))
     for i, spine in enumerate(body.spines):
         yield ("body", "spine", i, "front"), spine.front
@@ -81,11 +95,11 @@ def _block_references(robot: Robot) -> Iterator[Named]:
 
 
 def _foot_references(robot: Robot) -> Iterator[Named]:
-    for kind, parts in (("leg", robot.body.legs), ("skid", robot.body.skids)):
+    groups: dict[str, tuple[Leg | Skid, ...]] = {"leg": robot.body.legs, "skid": robot.body.skids}
+    for kind, parts in groups.items():
         yield from ((("body", kind, i, "foot"), part.foot) for i, part in enumerate(parts))
 
 
 def _bellows_references(robot: Robot) -> Iterator[Named]:
-    for kind, chains in (("leg", robot.body.legs), ("spine", robot.body.spines)):
-        for i, chain in enumerate(chains):
-            yield from ((("body", kind, i, "unit", j, "bellows"), u.bellows) for j, u in enumerate(chain.units))
+    for place, chain in chain_places(robot):
+        yield from (((*place, "unit", j, "bellows"), u.bellows) for j, u in enumerate(chain.units))
