@@ -12,7 +12,8 @@ from gaitlab.robot.records import Robot
 def places_of(document: dict[str, Any], dotted: str) -> tuple[Place, ...]:
     """Where in the document a dotted path leads: none, one, or several when it passes through an array of tables.
 
-    An item of an array of tables is named by its `name` or `number`, by its position from 1, or left out for all of them.
+    An item of an array of tables is named by its `name` or `number`, by its position from 1, or left out for all of them;
+    one number of a list by its place from 0 (``body.leg.a.at_mm.0`` is x).
 
     >>> places_of({"ring": {"port_mL": 0.6}}, "ring.port_mL")
     (('ring', 'port_mL'),)
@@ -66,6 +67,8 @@ def _descend(node: Any, parts: tuple[str, ...], place: Place) -> Iterator[Place]
                 yield from _descend(node[key], parts[taken:], (*place, key))
     elif isinstance(node, list) and node and all(isinstance(item, dict) for item in node):
         yield from _through_items(node, parts, place)
+    elif isinstance(node, list) and len(parts) == 1 and parts[0] in map(str, range(len(node))):
+        yield (*place, int(parts[0]))
 
 
 def _through_items(items: list[Any], parts: tuple[str, ...], place: Place) -> Iterator[Place]:
