@@ -49,13 +49,13 @@ def static_ratio(inlet_mach: float, outlet_mach: float) -> float:
 
 def exit_ratio(inlet_mach: float, outlet_mach: float) -> float:
     """p2/p_u: static pressure at the outlet over the upstream reservoir's pressure."""
-    return _stagnation(inlet_mach) ** (-GAMMA / (GAMMA - 1.0)) * static_ratio(inlet_mach, outlet_mach)
+    return math.pow(_stagnation(inlet_mach), -GAMMA / (GAMMA - 1.0)) * static_ratio(inlet_mach, outlet_mach)
 
 
 def mass_flux(inlet_mach: float, pressure_Pa: float, gas: Gas) -> float:
     """G = p_u √(γ/(R T)) M1 (1 + (γ−1)/2 M1²)^−(γ+1)/(2(γ−1)) [kg/(m² s)] from a reservoir at p_u, T."""
     power = -(GAMMA + 1.0) / (2.0 * (GAMMA - 1.0))
-    return pressure_Pa * math.sqrt(GAMMA / gas.RT) * inlet_mach * _stagnation(inlet_mach) ** power
+    return pressure_Pa * math.sqrt(GAMMA / gas.RT) * inlet_mach * math.pow(_stagnation(inlet_mach), power)
 
 
 def duct_flow(section: Section, p_up_Pa: float, p_down_Pa: float, gas: Gas) -> DuctState:

@@ -20,7 +20,8 @@ def laminar_f_re(reynolds: Number, section: Section) -> Number:
     plus = section.length_m / (section.hydraulic_m * reynolds)
     entry = 3.44 / plus**0.5
     developed = section.k_developing / (4.0 * plus) + section.f_re
-    return entry + (developed - entry) / (1.0 + section.c_developing / plus**2)
+    total: Number = entry + (developed - entry) / (1.0 + section.c_developing / plus**2)
+    return total
 
 
 def darcy_factor(reynolds: Number, section: Section) -> Number:

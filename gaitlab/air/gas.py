@@ -56,7 +56,7 @@ class Gas:
         """Dynamic viscosity by Sutherland's law, μ = μ0 (T/T0)^1.5 (T0 + S)/(T + S)."""
         ratio = self.temperature_K / SUTHERLAND_REFERENCE_K
         spread = (SUTHERLAND_REFERENCE_K + SUTHERLAND_K) / (self.temperature_K + SUTHERLAND_K)
-        return SUTHERLAND_VISCOSITY_PA_S * ratio**1.5 * spread
+        return SUTHERLAND_VISCOSITY_PA_S * ratio * math.sqrt(ratio) * spread
 
     def density_kg_m3(self, pressure_Pa: float) -> float:
         """Density p/(R T) at an absolute pressure."""
