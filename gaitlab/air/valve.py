@@ -51,12 +51,12 @@ def valve_numbers(valve: Valve | ValveGeometry) -> Valve:
 def opening_target(
     control_vac: FloatArray, flow_vac_a: FloatArray, flow_vac_b: FloatArray, opening: FloatArray, bank: ValveBank
 ) -> tuple[FloatArray, OpeningSlopes]:
-    """Fraction of the open conductance that the valves tend to, in [leak, 1], and its derivatives; all shapes (n,).
+    """Opening in [0, 1] that each membrane tends to from its present `opening`, and its derivatives; all shapes (n,).
 
     threshold = threshold_Pa + low + sealing (high − low) − hysteresis · opening, with low and high the smaller and larger
     gauge vacuum of the two flow sides: raising all three pressures together changes nothing, and with one side at
-    atmosphere the threshold rises by `sealing` per Pa on the other. With x = (control − threshold)/span held to [0, 1]:
-    target = leak + (1 − leak) x² (3 − 2x). The membrane follows its target with the time constant `travel_s`.
+    atmosphere the threshold rises by `sealing` per Pa on the other. With x = (control − threshold)/span held to [0, 1]
+    the target is x² (3 − 2x). The membrane follows it with the time constant `travel_s`; `conductance_share` adds the leak.
     """
     difference = flow_vac_a - flow_vac_b
     apart = np.sqrt(difference * difference + SIDE_BLEND_PA**2)
@@ -64,13 +64,17 @@ def opening_target(
     threshold = bank.threshold_Pa + 0.5 * (flow_vac_a + flow_vac_b) + lift * (apart - SIDE_BLEND_PA)
     raised = control_vac - threshold + bank.hysteresis_Pa * opening
     x = np.minimum(np.maximum(raised / bank.opening_span_Pa, 0.0), 1.0)
-    travel = 1.0 - bank.leak_fraction
-    by_control = travel * 6.0 * x * (1.0 - x) / bank.opening_span_Pa
+    by_control = 6.0 * x * (1.0 - x) / bank.opening_span_Pa
     tilt = lift * difference / apart
     slopes = OpeningSlopes(
         by_control, -by_control * (0.5 + tilt), -by_control * (0.5 - tilt), by_control * bank.hysteresis_Pa
     )
-    return bank.leak_fraction + travel * x * x * (3.0 - 2.0 * x), slopes
+    return x * x * (3.0 - 2.0 * x), slopes
+
+
+def conductance_share(opening: FloatArray, bank: ValveBank) -> FloatArray:
+    """Share of the open conductance at an opening in [0, 1]: leak + (1 − leak) · opening; never zero."""
+    return bank.leak_fraction + (1.0 - bank.leak_fraction) * opening
 
 
 def threshold_Pa(valve: Valve, flow_vac_a: float, flow_vac_b: float) -> float:
