@@ -1,0 +1,205 @@
+"""A walk as moving pictures: the body from the side and from above, and the ring with its signal running round."""
+
+from __future__ import annotations
+
+import shutil
+import subprocess
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from PIL import Image
+
+from gaitlab.errors import InputError, must
+from gaitlab.gait.records import Trace
+from gaitlab.report.body_view import draw_body, draw_feet
+from gaitlab.report.canvas import Canvas
+from gaitlab.report.ring_view import draw_ring
+from gaitlab.report.solids import Solid, solids_of
+from gaitlab.report.stage_set import COLUMN, RING, StageSet, Stretch, stage_set
+from gaitlab.report.style import BLUE, INK, MUTED, ORANGE
+from gaitlab.ring.waves import RingRun
+from gaitlab.wiring.wiring import Wiring
+
+PERIODS = 3
+FRAMES_PER_PERIOD = 24
+GIF_COLOURS = 96
+MM = 1e3
+TRAIL_PERIODS = 1.0
+
+
+@dataclass(frozen=True)
+class Film:
+    """Everything that is needed to paint any frame: the recorded walk, its ring and wiring, and the frames chosen."""
+
+    trace: Trace
+    ring: RingRun
+    wiring: Wiring
+    solids: tuple[Solid, ...]
+    frames: tuple[int, ...]
+    stage: StageSet
+    full_Pa: float
+
+    @property
+    def frame_s(self) -> float:
+        """Time between two frames [s]."""
+        return float(self.trace.time_s[self.frames[1]] - self.trace.time_s[self.frames[0]])
+
+
+def film_of(
+    trace: Trace,
+    ring: RingRun,
+    wiring: Wiring,
+    *,
+    title: str,
+    periods: int = PERIODS,
+    frames_per_period: int = FRAMES_PER_PERIOD,
+) -> Film:
+    """The last `periods` whole periods of the trace (fewer if it is shorter), `frames_per_period` pictures each.
+
+    Raises InputError when the trace holds less than one period or the counts are not above zero.
+    """
+    if periods < 1 or frames_per_period < 2:
+        raise InputError(must("periods and frames_per_period", "at least 1 and 2", (periods, frames_per_period)))
+    frames = _chosen_frames(trace, periods, frames_per_period)
+    solids = solids_of(trace.parts)
+    full = max(float(trace.vacuum_Pa.max()), float(ring.output_vacuum_Pa.max()), 1.0)
+    stretch = Stretch.of(trace, solids, range(frames[0], frames[-1] + 1))
+    stage = stage_set(stretch, title=title, subtitle=wiring.text(), full_Pa=full)
+    return Film(trace, ring, wiring, solids, frames, stage, full)
+
+
+def _chosen_frames(trace: Trace, periods: int, per_period: int) -> tuple[int, ...]:
+    """Indices of the instants nearest to an even beat over the last whole periods."""
+    step = float(np.median(np.diff(trace.time_s))) if len(trace.time_s) > 1 else 0.0
+    held = (trace.time_s[-1] - trace.time_s[0] + step) / trace.period_s if step else 0.0
+    whole = min(periods, int(held + 1e-6))
+    if whole < 1:
+        raise InputError(must("trace", "at least one period long", f"{held:.2f} periods", "record more periods"))
+    end = trace.time_s[-1] + step
+    wanted = end - trace.period_s * (whole - np.arange(whole * per_period) / per_period)
+    return tuple(int(np.argmin(np.abs(trace.time_s - moment))) for moment in wanted)
+
+
+def painted(film: Film, index: int) -> Image.Image:
+    """Frame number `index` of the film as a finished picture."""
+    frame = film.frames[index]
+    canvas = film.stage.backdrop.copy()
+    _draw_start_line(canvas, film)
+    _draw_travel(canvas, film, frame)
+    _draw_trails(canvas, film, frame)
+    for camera, radius in ((film.stage.side, 5.0), (film.stage.above, 5.0)):
+        draw_body(canvas, film.trace, film.solids, frame=frame, camera=camera, full_Pa=film.full_Pa)
+        draw_feet(canvas, film.trace, frame=frame, camera=camera, radius_px=radius)
+    draw_ring(canvas, film.ring, film.wiring, phase=_phase(film, frame), place=RING, full_Pa=film.full_Pa)
+    _draw_figures(canvas, film, index)
+    return canvas.finished()
+
+
+def _phase(film: Film, frame: int) -> float:
+    return float(film.trace.time_s[frame] / film.trace.period_s)
+
+
+def _nose_m(film: Film, frame: int) -> float:
+    """How far forward the first block's centre is."""
+    return float(film.trace.position_m[frame, 0, 0])
+
+
+def _draw_start_line(canvas: Canvas, film: Film) -> None:
+    """Where the body's middle was at the first frame, in both views."""
+    first = film.trace.position_m[film.frames[0], 0]
+    for camera in (film.stage.side, film.stage.above):
+        x = float(camera.pixels(first[None, :])[0, 0])
+        low, high = film.stage.stretch.low_m[camera.axis], film.stage.stretch.high_m[camera.axis]
+        ends = [camera.level_px - (value - camera.level_m) * camera.px_per_m for value in (high, low)]
+        canvas.dashes((x, ends[0]), (x, ends[1]), colour=MUTED, width=1.0)
+
+
+def _draw_travel(canvas: Canvas, film: Film, frame: int) -> None:
+    """The way so far as a blue bar in the tray's floor, from the start line to the body's middle."""
+    camera = film.stage.side
+    both = film.trace.position_m[[film.frames[0], frame], 0]
+    start, here = (float(x) for x in camera.pixels(both)[:, 0])
+    y = camera.level_px + 3.5
+    canvas.line([(start, y), (here, y)], colour=BLUE, width=5.0)
+    canvas.disc((here, y), 4.0, fill=BLUE)
+
+
+def _draw_trails(canvas: Canvas, film: Film, frame: int) -> None:
+    """Where the loaded feet slid during the last period, from above."""
+    since = film.trace.time_s[frame] - TRAIL_PERIODS * film.trace.period_s
+    first = int(np.searchsorted(film.trace.time_s, since))
+    for foot in range(len(film.trace.feet)):
+        pixels = film.stage.above.pixels(film.trace.foot_m[first : frame + 1, foot])
+        loaded = film.trace.loaded[first : frame + 1, foot]
+        for k in np.flatnonzero(loaded[1:] & loaded[:-1]):
+            canvas.line(pixels[k : k + 2], colour=ORANGE, width=2.4)
+
+
+def _draw_figures(canvas: Canvas, film: Film, index: int) -> None:
+    """Travelled distance large, period and time small; and the distance as an arrow under the start line."""
+    frame, first = film.frames[index], film.frames[0]
+    travelled = MM * (_nose_m(film, frame) - _nose_m(film, first))
+    left, right = COLUMN
+    elapsed = float(film.trace.time_s[frame] - film.trace.time_s[first])
+    canvas.text((left, 346), "travelled", size=10.5, colour=MUTED)
+    canvas.text((left, 370), f"{travelled:+.1f} mm".replace("-", "−"), size=22, bold=True, colour=BLUE)
+    per_period = len(film.frames) * film.frame_s / film.trace.period_s
+    turn = int(elapsed / film.trace.period_s + 1e-6) + 1
+    canvas.text((left, 396), f"period {turn} of {round(per_period)}", size=10.5)
+    canvas.text((right, 396), f"{elapsed:.2f} s", size=10.5, anchor="rm")
+    canvas.text((left, 414), f"one period lasts {film.trace.period_s:.2f} s", size=10.5, colour=INK)
+
+
+def write_gif(film: Film, path: str | Path) -> Path:
+    """The film as an endless GIF at its own speed, one palette for all frames.
+
+    GIF times are whole hundredths of a second, and viewers slow down below two of them.
+    """
+    target = _named(path, ".gif")
+    frames = [painted(film, index) for index in range(len(film.frames))]
+    palette = _palette(frames)
+    indexed = [frame.quantize(palette=palette, dither=Image.Dither.NONE) for frame in frames]
+    duration_ms = max(10 * round(100 * film.frame_s), 20)
+    indexed[0].save(target, save_all=True, append_images=indexed[1:], duration=duration_ms, loop=0, optimize=False)
+    return target
+
+
+def _palette(frames: Sequence[Image.Image]) -> Image.Image:
+    """One palette from a mosaic of a few frames, so that colours do not flicker."""
+    chosen = [frames[k] for k in sorted({0, len(frames) // 3, 2 * len(frames) // 3})]
+    mosaic = Image.new("RGB", (chosen[0].width, sum(image.height for image in chosen)))
+    for k, image in enumerate(chosen):
+        mosaic.paste(image, (0, k * image.height))
+    return mosaic.quantize(colors=GIF_COLOURS, method=Image.Quantize.MEDIANCUT)
+
+
+def write_mp4(film: Film, path: str | Path) -> Path:
+    """The film as H.264 through ffmpeg. Raises InputError when ffmpeg is not on the path or gives up."""
+    target = _named(path, ".mp4")
+    program = shutil.which("ffmpeg")
+    if program is None:
+        raise InputError(must("ffmpeg", "on the path for MP4", None, "install ffmpeg or write a .gif instead"))
+    first = painted(film, 0)
+    command = [program, "-loglevel", "error", "-y", "-f", "rawvideo", "-pix_fmt", "rgb24"]
+    command += ["-s", f"{first.width}x{first.height}", "-r", f"{1 / film.frame_s:.4f}", "-i", "-", "-an"]
+    command += ["-c:v", "libx264", "-pix_fmt", "yuv420p", "-crf", "20", "-fflags", "+bitexact", str(target)]
+    stream = b"".join(image.tobytes() for image in _all_painted(film))
+    done = subprocess.run(command, input=stream, capture_output=True, check=False)
+    if done.returncode:
+        raise InputError(must("ffmpeg", "able to write MP4", done.stderr.decode(errors="replace").strip()[-300:]))
+    return target
+
+
+def _all_painted(film: Film) -> Iterator[Image.Image]:
+    return (painted(film, index) for index in range(len(film.frames)))
+
+
+def _named(path: str | Path, ending: str) -> Path:
+    target = Path(path)
+    if target.suffix.lower() != ending:
+        raise InputError(must("film file", f"named {ending}", target.name))
+    if not target.parent.is_dir():
+        raise InputError(must("folder of the film", "there already", str(target.parent), "make it first"))
+    return target
