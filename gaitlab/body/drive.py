@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gaitlab.body.dynamics import free_joint_mass
-from gaitlab.body.model import BodyModel
+from gaitlab.body.records import BodyModel
 
 FloatArray = NDArray[np.float64]
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from gaitlab.body.model import BodyModel
+from gaitlab.body.records import BodyModel
 
 FloatArray = NDArray[np.float64]
 

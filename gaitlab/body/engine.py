@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gaitlab.body.drive import Drive
-from gaitlab.body.model import BodyModel
+from gaitlab.body.records import BodyModel
 
 FloatArray = NDArray[np.float64]
 

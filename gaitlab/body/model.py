@@ -1,140 +1,248 @@
-"""The body as both physics engines build it: a tree of rigid links, one joint each, and the numbers of every joint.
-
-When every joint is at zero all link frames are parallel to the body frame (x forward, y left, z up), so that axes,
-offsets and inertias of all links are written in one orientation. Link 0 is the root block and moves freely; joint j
-carries link j + 1.
-"""
+"""From the robot file's record to the tree of links that the engines build."""
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
 
+from gaitlab.body.chain import Chain, Station, chain_of, laws_of
+from gaitlab.body.checks import check_body
+from gaitlab.body.dynamics import link_origins
+from gaitlab.body.records import BlockModel, BodyModel, ChainModel, FootModel, Joint, Link, Look
+from gaitlab.body.rotation import quaternion_of
+from gaitlab.body.solids import Solid, ball, box, joined, point
+from gaitlab.errors import InputError, must
 from gaitlab.gait.records import Part
 from gaitlab.robot.circuit import Vector
+from gaitlab.robot.parts import Block, Foot, Leg, Spine
+from gaitlab.robot.records import Robot
+
+__all__ = ["BodyModel", "body_model"]
 
 FloatArray = NDArray[np.float64]
-GRAVITY_M_S2 = 9.80665  # standard gravity, ISO 80000-3
 
 
-@dataclass(frozen=True)
-class Joint:
-    """The joint that carries a link: a slide along or a turn about `axis` (unit vector) at `origin_m` in the parent's frame.
+def body_model(robot: Robot) -> BodyModel:
+    """The engine-neutral body of a robot, checked: every leg reaches the ground, no column buckles, the tree is a tree.
 
-    Torque or force along the axis: actuation by inlet · vacuum − stiffness · q − damping · q̇ − stop_gain · (|q| − stop_at)²
-    with the sign of q, the last only past `stop_at`. `implicit` dampers act through the mass matrix (see Drive).
+    Raises InputError naming the number and its limit; what is legal but doubtful is in the model's `warnings`.
     """
-
-    kind: str  # "revolute" | "prismatic"
-    axis: Vector
-    origin_m: Vector
-    chain: str
-    stiffness: float
-    damping: float
-    stop_at: float
-    stop_gain: float
-    actuation: tuple[tuple[str, float], ...]
-    implicit: bool
+    return check_body(_Builder(robot).built())
 
 
-@dataclass(frozen=True)
-class Link:
-    """A rigid link: `com_m` and `inertia_kg_m2` (3 × 3 about the centre of mass) in its own frame, which sits in its joint.
+class _Builder:
+    """Grows the list of links from the root block outwards; one use, one model."""
 
-    `scaled_axis` is the axis about which the numerical inertia factor acts (None: a block, left as it is).
-    """
+    def __init__(self, robot: Robot) -> None:
+        self.robot = robot
+        self.laws = laws_of(robot)
+        self.links: list[Link] = []
+        self.looks: list[Look] = []
+        self.feet: dict[str, FootModel] = {}
+        self.blocks: dict[str, BlockModel] = {}
+        self.chains: list[ChainModel] = []
 
-    name: str
-    parent: int
-    mass_kg: float
-    com_m: Vector
-    inertia_kg_m2: tuple[Vector, Vector, Vector]
-    joint: Joint | None = None
-    scaled_axis: Vector | None = None
-
-    def inertia(self, factor: float) -> FloatArray:
-        """Inertia [kg m²] (3, 3) with `factor` on the rotation about `scaled_axis`: I + (factor − 1)(a·I·a) a aᵀ."""
-        inertia = np.array(self.inertia_kg_m2)
-        if self.scaled_axis is None:
-            return inertia
-        axis = np.array(self.scaled_axis)
-        return inertia + (factor - 1.0) * (axis @ inertia @ axis) * np.outer(axis, axis)
-
-
-@dataclass(frozen=True)
-class FootModel:
-    """A foot: spheres of `radius_m` at `centres_m` in the frame of `link`. Friction for sliding forward, back and sideways.
-
-    Forward is +x of the link's frame. `leg` tells a leg's foot from a skid on a block.
-    """
-
-    name: str
-    link: int
-    centres_m: tuple[Vector, ...]
-    radius_m: float
-    friction: tuple[float, float, float]
-    leg: bool
-
-    @property
-    def bristle(self) -> bool:
-        """Whether friction depends on the direction of sliding."""
-        return len(set(self.friction)) > 1
-
-
-@dataclass(frozen=True)
-class Look:
-    """Where a part of the picture sits: centre and orientation (x y z w) in the frame of its link."""
-
-    part: Part
-    link: int
-    centre_m: Vector
-    quaternion: tuple[float, float, float, float]
-
-
-@dataclass(frozen=True)
-class BodyModel:
-    """An engine-neutral body: links in an order where parents come first, feet, looks, and the ground under it.
-
-    `start_height_m` puts the lowest foot on the ground with all joints at zero.
-    """
-
-    name: str
-    inlets: tuple[str, ...]
-    links: tuple[Link, ...]
-    feet: tuple[FootModel, ...]
-    looks: tuple[Look, ...]
-    slope_rad: float
-    ground_friction: float
-    start_height_m: float
-    length_m: float
-    warnings: tuple[str, ...] = ()
-
-    @property
-    def joints(self) -> tuple[Joint, ...]:
-        """The joints in order; joint j carries link j + 1."""
-        return tuple(link.joint for link in self.links if link.joint is not None)
-
-    @property
-    def parts(self) -> tuple[Part, ...]:
-        """The parts of the picture, in the order of part poses."""
-        return tuple(look.part for look in self.looks)
-
-    @property
-    def mass_kg(self) -> float:
-        """Mass of everything."""
-        return sum(link.mass_kg for link in self.links)
-
-    @property
-    def gravity_m_s2(self) -> Vector:
-        """Gravity in the frame of the ground plane: a slope is a tilt of gravity, positive slope is uphill forward."""
-        return (
-            -GRAVITY_M_S2 * float(np.sin(self.slope_rad)),
-            0.0,
-            -GRAVITY_M_S2 * float(np.cos(self.slope_rad)),
+    def built(self) -> BodyModel:
+        root = root_block(self.robot)
+        self.links.append(_link(root.name, -1, self.block_solids(root, np.zeros(3)), None, None))
+        self.add_block(root, 0, np.zeros(3))
+        model = BodyModel(
+            name=self.robot.name,
+            inlets=self.robot.inlets(),
+            links=tuple(self.links),
+            feet=tuple(self.feet[item.name] for item in (*self.robot.body.legs, *self.robot.body.skids)),
+            looks=tuple(self.looks),
+            blocks=tuple(self.blocks.values()),
+            chains=tuple(self.chains),
+            slope_rad=self.robot.ground.slope_rad,
+            ground_friction=self.robot.ground.friction_factor,
+            start_height_m=0.0,
+            length_m=0.0,
+            warnings=tuple(text for law in self.laws.values() for text in law.warnings),
         )
+        return replace(model, start_height_m=start_height(model), length_m=body_length(model))
 
-    def block_links(self) -> dict[str, int]:
-        """Index of the link of every block, by the block's name."""
-        return {link.name: index for index, link in enumerate(self.links) if link.scaled_axis is None}
+    def add_block(self, block: Block, link: int, centre: FloatArray) -> None:
+        """Everything on a block that is already part of `link`: its look, skids, legs and the spines behind it."""
+        self.blocks[block.name] = BlockModel(block.name, link, _vector(centre))
+        part = Part(block.name, "box", block.size_m, _vector(centre), None, None)
+        self.looks.append(Look(part, link, _vector(centre), (0.0, 0.0, 0.0, 1.0)))
+        for skid in self.robot.body.skids:
+            if skid.block == block.name:
+                foot = self.robot.foot_named(skid.foot)
+                self.add_foot(skid.name, foot, link, centre + skid.at_m, leg=False)
+        for leg in self.robot.body.legs:
+            if leg.block == block.name:
+                self.add_leg(leg, link, centre + leg.at_m)
+        for spine in self.robot.body.spines:
+            if spine.front == block.name:
+                self.add_spine(spine, link, centre + spine.front_at_m)
+
+    def add_leg(self, leg: Leg, parent: int, head: FloatArray) -> None:
+        chain = chain_of(self.robot, leg, self.laws)
+        foot = self.robot.foot_named(leg.foot)
+        middle = chain.place(chain.length_m)
+        last = self.add_chain(chain, parent, head, foot_solids(foot, middle), leg=True, rigid_end=False)
+        last_joint = chain.stations()[-1].along_m
+        self.add_foot(leg.name, foot, last, middle - chain.place(last_joint), leg=True)
+
+    def add_spine(self, spine: Spine, parent: int, head: FloatArray) -> None:
+        if spine.rear in self.blocks:
+            raise InputError(must(f"spine {spine.name}.rear", "a block that no other spine carries", spine.rear))
+        chain = chain_of(self.robot, spine, self.laws)
+        block = next(block for block in self.robot.body.blocks if block.name == spine.rear)
+        centre = chain.place(chain.length_m) - np.array(spine.rear_at_m)
+        solids = tuple(self.block_solids(block, centre))
+        last = self.add_chain(chain, parent, head, solids, leg=False, rigid_end=True)
+        self.add_block(block, last, centre - chain.place(chain.stations()[-1].along_m))
+
+    def add_chain(
+        self, chain: Chain, parent: int, head: FloatArray, end: tuple[Solid, ...], *, leg: bool, rigid_end: bool
+    ) -> int:
+        """Append the links of a chain; `end` are the pieces on its far end, placed from its head. Returns the last link."""
+        stations, first = chain.stations(), len(self.links)
+        edges = [station.along_m for station in stations] + [chain.length_m]
+        origin, turning = head, None
+        for index, station in enumerate(stations):
+            start, stop = edges[index], edges[index + 1]
+            last = index == len(stations) - 1
+            turning = station.axis if station.kind == "revolute" else turning
+            solids = [
+                solid.moved(-chain.place(start)) for solid in (*chain.solids(start, stop), *(end if last else ()))
+            ]
+            scaled = None if last and rigid_end else turning
+            self.links.append(
+                _link(f"{chain.name}.{index + 1}", parent, solids, _joint(chain, station, origin), scaled)
+            )
+            parent, origin = len(self.links) - 1, chain.place(stop) - chain.place(start)
+            self.add_piece(chain, parent, start, stop)
+        mass = sum(link.mass_kg for link in self.links[first:])
+        self.chains.append(
+            ChainModel(
+                chain.name,
+                leg,
+                first,
+                len(self.links) - 1,
+                chain.length_m,
+                mass,
+                chain.bend_stiffness,
+                chain.axial_stiffness,
+            )
+        )
+        return len(self.links) - 1
+
+    def add_piece(self, chain: Chain, link: int, start: float, stop: float) -> None:
+        """The look of one piece of bellows: a capsule whose caps reach over its ends."""
+        if stop <= start:
+            return
+        unit = chain.unit_at(0.5 * (start + stop))
+        centre = _vector(0.5 * (chain.place(stop) - chain.place(start)))
+        size = (0.5 * unit.bellows.diameter_m, stop - start, 0.0)
+        part = Part(self.links[link].name, "capsule", size, centre, unit.unit.inlet, chain.name)
+        self.looks.append(Look(part, link, centre, quaternion_of(chain.axes)))
+
+    def add_foot(self, name: str, foot: Foot, link: int, middle: FloatArray, *, leg: bool) -> None:
+        places = tuple(_vector(centre) for centre in foot_centres(foot, middle))
+        back = foot.friction if foot.friction_backward is None else foot.friction_backward
+        side = foot.friction if foot.friction_sideways is None else foot.friction_sideways
+        self.feet[name] = FootModel(name, link, places, foot.radius_m, (foot.friction, back, side), leg)
+        for index, centre in enumerate(places):
+            part = Part(f"{name}.foot{index + 1}", "sphere", (foot.radius_m, 0.0, 0.0), centre, None, name)
+            self.looks.append(Look(part, link, centre, (0.0, 0.0, 0.0, 1.0)))
+
+    def block_solids(self, block: Block, centre: FloatArray) -> list[Solid]:
+        """A block with its payloads and skids, its middle at `centre`."""
+        solids = [box(block.mass_kg, block.size_m, centre)]
+        solids += [point(p.mass_kg, centre + p.at_m) for p in self.robot.body.payloads if p.block == block.name]
+        for skid in self.robot.body.skids:
+            if skid.block == block.name:
+                foot = self.robot.foot_named(skid.foot)
+                solids += foot_solids(foot, centre + skid.at_m)
+        return solids
+
+
+def root_block(robot: Robot) -> Block:
+    """The block that is no spine's rear; raises InputError where spines make a loop or leave a block unreached."""
+    rears = [spine.rear for spine in robot.body.spines]
+    for name in rears:
+        if rears.count(name) > 1:
+            raise InputError(must("body.spine.rear", "a different block for each spine", name, "a body is a tree"))
+    roots = [block for block in robot.body.blocks if block.name not in rears]
+    if len(roots) != 1:
+        names = ", ".join(block.name for block in roots) or "none"
+        fix = "join the blocks by spines into one tree without a loop"
+        raise InputError(must("body", "one tree with exactly one block that is no spine's rear", names, fix))
+    _no_loop(robot, roots[0])
+    return roots[0]
+
+
+def _no_loop(robot: Robot, root: Block) -> None:
+    reached, waiting = {root.name}, [root.name]
+    while waiting:
+        front = waiting.pop()
+        rears = [spine.rear for spine in robot.body.spines if spine.front == front]
+        reached.update(rears)
+        waiting += rears
+    lost = [block.name for block in robot.body.blocks if block.name not in reached]
+    if lost:
+        fix = "let every block be the rear of one spine that leads back to the root"
+        raise InputError(must("body.spine", "a tree without a loop", "blocks in a loop: " + ", ".join(lost), fix))
+
+
+def foot_centres(foot: Foot, middle: FloatArray) -> list[FloatArray]:
+    """Centres of a foot's spheres: one in the middle, or two `spacing_m` apart across or along."""
+    if foot.spacing_m == 0:
+        return [middle]
+    axis = np.array([0.0, 1.0, 0.0] if foot.spacing_axis == "across" else [1.0, 0.0, 0.0])
+    return [middle + 0.5 * foot.spacing_m * axis, middle - 0.5 * foot.spacing_m * axis]
+
+
+def foot_solids(foot: Foot, middle: FloatArray) -> tuple[Solid, ...]:
+    """A foot's spheres, which share its mass."""
+    places = foot_centres(foot, middle)
+    return tuple(ball(foot.mass_kg / len(places), foot.radius_m, place) for place in places)
+
+
+def start_height(model: BodyModel) -> float:
+    """Height [m] of the root's middle with the lowest foot just on the ground, joints at zero."""
+    if not model.feet:
+        raise InputError(must("body", "given at least one leg or skid", "none", "a body needs feet to stand on"))
+    origins = link_origins(model)
+    return max(float(foot.radius_m - origins[foot.link][2] - c[2]) for foot in model.feet for c in foot.centres_m)
+
+
+def body_length(model: BodyModel) -> float:
+    """Length [m] along x from the foremost to the hindmost surface of blocks and feet, joints at zero."""
+    origins, reach = link_origins(model), []
+    for look in model.looks:
+        half = 0.5 * look.part.size_m[0] if look.part.kind == "box" else look.part.size_m[0]
+        x = float(origins[look.link][0] + look.centre_m[0])
+        reach += [x - half, x + half]
+    return max(reach) - min(reach)
+
+
+def _joint(chain: Chain, station: Station, origin: FloatArray) -> Joint:
+    return Joint(
+        kind=station.kind,
+        axis=station.axis,
+        origin_m=_vector(origin),
+        chain=chain.name,
+        stiffness=station.stiffness,
+        damping=station.damping,
+        stop_at=station.stop_at,
+        stop_gain=station.stop_gain,
+        actuation=station.actuation,
+        implicit=station.kind == "revolute",
+    )
+
+
+def _link(name: str, parent: int, solids: list[Solid], joint: Joint | None, scaled: Vector | None) -> Link:
+    solid = joined(solids)
+    x, y, z = (_vector(row) for row in solid.inertia_kg_m2)
+    return Link(name, parent, solid.mass_kg, _vector(solid.centre_m), (x, y, z), joint, scaled)
+
+
+def _vector(array: FloatArray) -> Vector:
+    return (float(array[0]), float(array[1]), float(array[2]))
