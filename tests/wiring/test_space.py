@@ -11,7 +11,7 @@ import pytest
 
 from gaitlab.errors import InputError
 from gaitlab.robot.reader import robot_from_document
-from gaitlab.robot.records import Robot
+from gaitlab.robot.records import Robot, WiringLimits
 from gaitlab.wiring.space import WiringSpace
 from gaitlab.wiring.wiring import Wiring
 from wiring.brute_force import allowed, classes
@@ -172,19 +172,26 @@ def test_reverse_outside_the_limits_is_none() -> None:
 @pytest.mark.parametrize(
     ("limits", "words"),
     [
-        ({"inlets_per_output_max": 1, "fixed": dict.fromkeys("abcdef", 1)}, "at most 5 inlets on outputs"),
-        ({}, "5 outputs of 1 each"),
-        ({"inlets_per_output_max": 2, "tied": [["a", "b", "c"]]}, "largest of 3"),
+        (
+            WiringLimits(fixed=tuple((c, 1) for c in "abcdef")),
+            "at most 5 inlets on outputs .5 outputs of 1 each., got 6",
+        ),
+        (WiringLimits(), "5 outputs of 1 each, each output used, no inlet on open or held.*6 inlets"),
+        (WiringLimits(inlets_per_output_max=2, tied=(("a", "b", "c"),)), "largest of 3"),
+        (WiringLimits(2, tied=(("a", "b"),), fixed=(("a", 1), ("b", 2))), "same source for inlets tied together"),
     ],
 )
-def test_limits_that_leave_nothing_say_the_rule_and_the_numbers(limits: dict[str, object], words: str) -> None:
+def test_limits_that_leave_nothing_say_the_rule_and_the_numbers(limits: WiringLimits, words: str) -> None:
+    robot = dataclasses.replace(row(6, 5, inlets_per_output_max=2), wiring=limits)
     with pytest.raises(InputError, match=words):
-        WiringSpace.of(row(6, 5, **limits))
+        WiringSpace.of(robot)
 
 
-def test_contradicting_ties_are_refused() -> None:
-    with pytest.raises(InputError, match=r"tied|same source"):
-        WiringSpace.of(row(5, 5, inlets_per_output_max=2, tied=[["a", "b"]], fixed={"a": 1, "b": 2}))
+def test_even_ring_is_refused() -> None:
+    robot = row(4, 5, every_output_used=False)
+    even = dataclasses.replace(robot, ring=dataclasses.replace(robot.ring, stages=4))
+    with pytest.raises(InputError, match=r"ring\.stages must be odd"):
+        WiringSpace.of(even)
 
 
 def test_wiring_of_another_robot_is_refused() -> None:
