@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 import pytest
+from wiring.robots import document, pairs, row
 
 from gaitlab.robot.reader import robot_from_document
 from gaitlab.wiring.smooth import SmoothWaves, ideal_phase, output_at, rows, time_step
 from gaitlab.wiring.space import WiringSpace
 from gaitlab.wiring.wiring import Wiring
-from wiring.robots import document, pairs, row
 
 
 @pytest.mark.parametrize("stages", [3, 5, 7, 9, 15])

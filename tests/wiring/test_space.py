@@ -8,14 +8,14 @@ from collections import Counter
 
 import numpy as np
 import pytest
+from wiring.brute_force import allowed, classes
+from wiring.robots import document, pairs, row
 
 from gaitlab.errors import InputError
 from gaitlab.robot.reader import robot_from_document
 from gaitlab.robot.records import Robot, WiringLimits
 from gaitlab.wiring.space import WiringSpace
 from gaitlab.wiring.wiring import Wiring
-from wiring.brute_force import allowed, classes
-from wiring.robots import document, pairs, row
 
 CASES: dict[str, Robot] = {
     "row": row(5, 5),
