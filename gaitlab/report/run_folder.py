@@ -14,8 +14,8 @@
                 "reversed_wiring": {…} | null, "reversed_rank": n | null, "reversed_walk": Walk | null}]
     rings       {"best": RingRun, "reversed": RingRun | null}
     rechecks    [{"name", "order_kept": true | false | null, "travel_m": best wiring's travel, "note"}]       (may be absent)
-    spread      {"draws", "seed", "wirings": [{"wiring", "travel_m": {"p05","p50","p95"}, "speed_m_s": {…}, "chance_best",
-                "chance_forward"}], "sensitivities": [{"name", "share", "share_error"}]} | null                  (may be absent)
+    spread      {"draws", "seed", "wirings": [{"wiring": {…}, "summary": trust.summary.WiringSummary}],
+                "sensitivities": [trust.sensitivity.Sensitivity]} | null                                         (may be absent)
 
 Beside it `traces/best.npz` and `traces/reversed.npz` (`gaitlab.gait.trace_file`); a missing trace costs its pictures only.
 """
@@ -34,6 +34,8 @@ from gaitlab.record_json import record_from_json
 from gaitlab.ring.waves import RingRun
 from gaitlab.robot.reader import robot_from_document
 from gaitlab.robot.records import Robot
+from gaitlab.trust.sensitivity import Sensitivity
+from gaitlab.trust.summary import WiringSummary
 from gaitlab.wiring.wiring import Wiring
 
 LAYOUT = 1
@@ -79,32 +81,11 @@ class Recheck:
 
 
 @dataclass(frozen=True)
-class Quantiles:
-    """p05, p50 and p95 of a quantity over the tolerance draws."""
-
-    p05: float
-    p50: float
-    p95: float
-
-
-@dataclass(frozen=True)
 class WiringSpread:
     """How one wiring does over the tolerances."""
 
     wiring: Wiring
-    travel_m: Quantiles
-    speed_m_s: Quantiles
-    chance_best: float
-    chance_forward: float
-
-
-@dataclass(frozen=True)
-class Sensitivity:
-    """Share of the variance of travel that one number of the robot file explains, with its own uncertainty."""
-
-    name: str
-    share: float
-    share_error: float
+    summary: WiringSummary
 
 
 @dataclass(frozen=True)
@@ -253,10 +234,7 @@ def _spread(data: Mapping[str, Any] | None) -> Spread | None:
     rows = tuple(
         WiringSpread(
             wiring=Wiring.of(row["wiring"]),
-            travel_m=record_from_json(Quantiles, row["travel_m"], name="spread.travel_m"),
-            speed_m_s=record_from_json(Quantiles, row["speed_m_s"], name="spread.speed_m_s"),
-            chance_best=float(row["chance_best"]),
-            chance_forward=float(row["chance_forward"]),
+            summary=record_from_json(WiringSummary, row["summary"], name="spread.summary"),
         )
         for row in data["wirings"]
     )

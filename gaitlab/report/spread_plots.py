@@ -7,8 +7,9 @@ from collections.abc import Sequence
 import numpy as np
 from matplotlib.figure import Figure
 
-from gaitlab.report.run_folder import Sensitivity, Spread
+from gaitlab.report.run_folder import Spread
 from gaitlab.report.style import BLUE, INK, MUTED, bare, new_figure, styled
+from gaitlab.trust.sensitivity import Sensitivity
 
 MM = 1e3
 SENSITIVITIES_SHOWN = 12
@@ -20,10 +21,10 @@ def spread_plot(spread: Spread, *, title: str = "Spread over the tolerances") ->
         figure = new_figure(170, 45 + 10 * len(spread.wirings))
         ax = figure.subplots()
         for y, row in enumerate(spread.wirings):
-            travel = row.travel_m
+            travel = row.summary.travel_m
             ax.plot([MM * travel.p05, MM * travel.p95], [y, y], color=BLUE, lw=5, alpha=0.45, solid_capstyle="butt")
             ax.plot(MM * travel.p50, y, marker="o", ms=7, mfc="white", mec=BLUE, mew=1.8)
-            chances = f"best {100 * row.chance_best:.0f} %\nforward {100 * row.chance_forward:.0f} %"
+            chances = f"best {100 * row.summary.best.share:.0f} %\nforward {100 * row.summary.forward.share:.0f} %"
             ax.text(1.01, y, chances, transform=ax.get_yaxis_transform(), va="center", fontsize=8, color=INK)
         ax.axvline(0.0, color=MUTED, lw=0.8)
         ax.set_yticks(range(len(spread.wirings)), [row.wiring.text() for row in spread.wirings])
@@ -41,11 +42,11 @@ def sensitivity_bars(sensitivities: Sequence[Sensitivity], *, title: str = "Meas
     with styled():
         figure = new_figure(160, 34 + 7.5 * len(rows))
         ax = figure.subplots()
-        errors = np.nan_to_num([100 * row.share_error for row in rows])
+        errors = [[100 * (row.share - row.low) for row in rows], [100 * (row.high - row.share) for row in rows]]
         ax.barh(
             range(len(rows)),
             [100 * row.share for row in rows],
-            xerr=errors,
+            xerr=np.maximum(errors, 0.0),
             height=0.6,
             color=BLUE,
             edgecolor=INK,
@@ -55,7 +56,7 @@ def sensitivity_bars(sensitivities: Sequence[Sensitivity], *, title: str = "Meas
         ax.set_yticks(range(len(rows)), [row.name for row in rows])
         ax.set_ylim(len(rows) - 0.4, -0.6)
         ax.set_xlim(left=0)
-        ax.set_xlabel("share of the variance of travel (%)")
+        ax.set_xlabel("share of the variance of travel (%), whisker: 90 % interval")
         ax.set_ylabel("number in the robot file")
         ax.set_title(title)
         bare(ax, grid="x")

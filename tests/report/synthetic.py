@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import json
 import math
 from collections.abc import Mapping
@@ -13,6 +14,8 @@ import numpy as np
 from gaitlab.gait.records import Part, Trace, Walk, WaveReading
 from gaitlab.record_json import record_to_json
 from gaitlab.ring.waves import RingRun, Waves
+from gaitlab.trust.sensitivity import Sensitivity
+from gaitlab.trust.summary import Chance, Quantiles, WiringSummary
 from gaitlab.wiring.wiring import Wiring
 
 LEGS = ("a", "b", "c", "d", "e")
@@ -147,13 +150,15 @@ def trace(wiring: Wiring, *, periods: int = 4, hz: float = 60.0, travel_m: float
 
 
 BEST = Wiring.of({"a": 1, "b": 4, "c": 2, "d": 5, "e": 3})
+OTHER = Wiring.of({"a": 1, "b": 3, "c": 5, "d": 2, "e": 4})
+ORDERS = [order for order in itertools.permutations(range(1, 6)) if order[0] == 1]
 
 
 def ranking_rows(count: int = 24) -> list[dict[str, Any]]:
     """Rows of a made-up ranking, best first, each with its reversed wave."""
     rows = []
     for k in range(count):
-        wiring = BEST.turned(k % 5, 5) if k else BEST
+        wiring = Wiring.of(dict(zip(LEGS, ORDERS[(k + 13) % 24], strict=True)))
         other = (k + 7) % count
         rows.append(
             {
@@ -169,34 +174,32 @@ def ranking_rows(count: int = 24) -> list[dict[str, Any]]:
     return rows
 
 
+def _summary(p05: float, p50: float, p95: float, *, best: float, forward: float) -> WiringSummary:
+    travel = Quantiles(p05, p50, p95)
+    speed = Quantiles(p05 / PERIOD_S, p50 / PERIOD_S, p95 / PERIOD_S)
+    sure, never = Chance(1.0, 0.96, 1.0), Chance(0.0, 0.0, 0.04)
+    shares = (Chance(forward, forward - 0.03, forward), Chance(best, best - 0.1, best + 0.09))
+    return WiringSummary(travel, speed, *shares, ring_fails=never, walks=sure, outcomes=(("walked", 64),))
+
+
 def spread_json() -> dict[str, Any]:
-    """Spread of two finalists and five sensitivities, invented."""
-    speeds = {"p05": 0.008, "p50": 0.012, "p95": 0.015}
+    """Spread of two finalists and four sensitivities, invented."""
+    first = _summary(0.0081, 0.0109, 0.0132, best=0.71, forward=1.0)
+    second = _summary(0.0066, 0.0101, 0.0125, best=0.29, forward=0.98)
+    shares = [
+        Sensitivity("foot.pad.friction", 0.41, 0.34, 0.47),
+        Sensitivity("ring.resistor.square_mm", 0.28, 0.21, 0.33),
+        Sensitivity("bellows.leg.axial_stiffness_N_m", 0.14, 0.09, 0.2),
+        Sensitivity("ring.valve.threshold_kPa", 0.07, 0.02, 0.11),
+    ]
     return {
         "draws": 64,
         "seed": 1,
         "wirings": [
-            {
-                "wiring": BEST.as_dict(),
-                "travel_m": {"p05": 0.0081, "p50": 0.0109, "p95": 0.0132},
-                "speed_m_s": speeds,
-                "chance_best": 0.71,
-                "chance_forward": 1.0,
-            },
-            {
-                "wiring": BEST.turned(1, 5).as_dict(),
-                "travel_m": {"p05": 0.0066, "p50": 0.0101, "p95": 0.0125},
-                "speed_m_s": speeds,
-                "chance_best": 0.29,
-                "chance_forward": 0.98,
-            },
+            {"wiring": BEST.as_dict(), "summary": record_to_json(first)},
+            {"wiring": OTHER.as_dict(), "summary": record_to_json(second)},
         ],
-        "sensitivities": [
-            {"name": "foot.pad.friction", "share": 0.41, "share_error": 0.06},
-            {"name": "ring.resistor.square_mm", "share": 0.28, "share_error": 0.05},
-            {"name": "bellows.leg.axial_stiffness_N_m", "share": 0.14, "share_error": 0.04},
-            {"name": "ring.valve.threshold_kPa", "share": 0.07, "share_error": 0.03},
-        ],
+        "sensitivities": record_to_json(shares),
     }
 
 
@@ -238,6 +241,6 @@ def write_run(folder: Path, document: Mapping[str, Any], text: str) -> Path:
 
     (folder / "traces").mkdir(parents=True)
     (folder / "run.json").write_text(json.dumps(run_json(document, text)), encoding="utf-8")
-    write_trace(trace(BEST), folder / "traces" / "best.npz")
-    write_trace(trace(BEST.reversed(5), travel_m=0.001), folder / "traces" / "reversed.npz")
+    write_trace(folder / "traces" / "best.npz", trace(BEST))
+    write_trace(folder / "traces" / "reversed.npz", trace(BEST.reversed(5), travel_m=0.001))
     return folder
