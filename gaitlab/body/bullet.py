@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import Any
 
 import numpy as np
 import pybullet
@@ -74,11 +75,9 @@ class BulletEngine:
 
     def feet(self) -> FeetState:
         """Places, speeds and loads of the feet."""
-        loads = np.zeros(len(self.model.feet))
-        for index, points in enumerate(self._contacts()):
-            loads[index] = sum(point[9] for point in points)
-        places, speeds = self._foot_motion()
-        return FeetState(places, speeds, loads)
+        loads = np.array([sum(point[9] for point in points) for points in self._contacts()])
+        places, turns, speeds, spins = self._foot_motion()
+        return FeetState(places, speeds, turns, spins, loads)
 
     def part_poses(self) -> tuple[FloatArray, FloatArray]:
         """Centres and orientations of all parts of the picture."""
@@ -110,9 +109,9 @@ class BulletEngine:
         states = pybullet.getLinkStates(self._body, self._joints, physicsClientId=self._client)
         return [root, *((state[4], state[5]) for state in states)]
 
-    def _contacts(self) -> list[list[tuple]]:
+    def _contacts(self) -> list[list[tuple[Any, ...]]]:
         """Contact points with the ground, by foot."""
-        points: list[list[tuple]] = [[] for _ in self.model.feet]
+        points: list[list[tuple[Any, ...]]] = [[] for _ in self.model.feet]
         by_link: dict[int, list[int]] = {}
         for index, link in enumerate(self._feet_links):
             by_link.setdefault(link, []).append(index)
@@ -126,16 +125,16 @@ class BulletEngine:
         places = self._foot_motion()[0][owners]
         return owners[int(np.argmin(np.linalg.norm(places - np.array(place), axis=1)))]
 
-    def _foot_motion(self) -> tuple[FloatArray, FloatArray]:
-        """Middle of each foot and its velocity."""
-        places, speeds = [], []
+    def _foot_motion(self) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+        """Middle of each foot, orientation, velocity of the middle, turning rate."""
+        rows = []
         for foot in self.model.feet:
-            frame, com, linear, angular = self._link_motion(foot.link)
+            frame, com, linear, spin = self._link_motion(foot.link)
             middle = np.mean(foot.centres_m, axis=0)
             place = np.array(pybullet.multiplyTransforms(*frame, middle.tolist(), NO_TURN)[0])
-            places.append(place)
-            speeds.append(np.array(linear) + np.cross(angular, place - com))
-        return np.array(places), np.array(speeds)
+            rows.append((place, frame[1], np.array(linear) + np.cross(spin, place - com), spin))
+        places, turns, speeds, spins = (np.array(column) for column in zip(*rows, strict=True))
+        return places, turns, speeds, spins
 
     def _link_motion(self, link: int) -> tuple[tuple[Floats, Floats], FloatArray, Floats, Floats]:
         if link == 0:
@@ -149,13 +148,11 @@ class BulletEngine:
         """Give every bristle foot the friction of the way it tends to slide, read from the force that holds it now."""
         contacts = self._contacts()
         for index in self._bristles:
-            force = sum(
-                (point[10] * np.array(point[11]) + point[12] * np.array(point[13]) for point in contacts[index])
-            )
+            force = sum(point[10] * np.array(point[11]) + point[12] * np.array(point[13]) for point in contacts[index])
             if not contacts[index]:
                 continue
             foot = self.model.feet[index]
-            forward = np.array(pybullet.rotateVector(self._orientation(foot.link), [1.0, 0.0, 0.0]))
+            forward = np.array(pybullet.rotateVector(self._link_motion(foot.link)[0][1], [1.0, 0.0, 0.0]))
             friction = bristle_friction(foot.friction, -np.asarray(force), forward)
             if friction != self._friction[index]:
                 self._friction[index] = friction

@@ -52,7 +52,7 @@ class _Builder:
             name=self.robot.name,
             inlets=self.robot.inlets(),
             links=tuple(self.links),
-            feet=tuple(self.feet[item.name] for item in (*self.robot.body.legs, *self.robot.body.skids)),
+            feet=tuple(self.feet[name] for name in foot_names(self.robot)),
             looks=tuple(self.looks),
             blocks=tuple(self.blocks.values()),
             chains=tuple(self.chains),
@@ -189,6 +189,11 @@ def _no_loop(robot: Robot, root: Block) -> None:
     if lost:
         fix = "let every block be the rear of one spine that leads back to the root"
         raise InputError(must("body.spine", "a tree without a loop", "blocks in a loop: " + ", ".join(lost), fix))
+
+
+def foot_names(robot: Robot) -> tuple[str, ...]:
+    """Names of the feet in the file's order: those of the legs, then the skids."""
+    return (*(leg.name for leg in robot.body.legs), *(skid.name for skid in robot.body.skids))
 
 
 def foot_centres(foot: Foot, middle: FloatArray) -> list[FloatArray]:
