@@ -12,9 +12,6 @@ from gaitlab.air.tables import ElementTable, element_table
 from gaitlab.errors import InputError, must
 from gaitlab.robot.circuit import FlowPart
 
-LEAST_PRESSURE_PA = 1.0  # below this an upstream pressure is taken as this; an integrator's trial step may ask for less
-LEAST_ELLIPSE_PA2 = 1e-30  # keeps the logarithm finite at rest
-
 
 class FlowElements:
     """Flow through n elements at once.
@@ -32,13 +29,15 @@ class FlowElements:
     def __init__(self, tables: Sequence[ElementTable]) -> None:
         count = len(tables)
         self.count = count
-        self._ratio = RowTable(np.reshape([t.ratio_rows for t in tables], (count, -1, 8)))
-        self._flow = RowTable(np.reshape([t.flow_rows for t in tables], (count, -1, 8)))
+        self._complement = RowTable(np.reshape([t.complement_rows for t in tables], (count, -1, 8)))
+        self._gain = RowTable(np.reshape([t.flow_rows for t in tables], (count, -1, 8)))
+        self._least_ellipse = np.exp([t.flow_start for t in tables])
         self._flow_scale = np.array([1.0 / t.flow_spacing for t in tables])
         self._flow_shift = np.array([-t.flow_start / t.flow_spacing for t in tables])
+        self._least_pressure = float(np.exp(tables[0].pressure_start))
         self._pressure_scale = 1.0 / tables[0].pressure_spacing
         self._pressure_shift = -tables[0].pressure_start * self._pressure_scale
-        self._work = np.empty((12, count))
+        self._work = tuple(np.empty((8, count)))
 
     @classmethod
     def of(cls, parts: Sequence[FlowPart], gas: Gas) -> FlowElements:
@@ -50,7 +49,7 @@ class FlowElements:
     @property
     def bytes_per_element(self) -> float:
         """Memory of the tables per element [bytes]."""
-        return (self._ratio.nbytes + self._flow.nbytes) / self.count
+        return (self._complement.nbytes + self._gain.nbytes) / self.count
 
     def flow(self, p_a: FloatArray, p_b: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
         """Mass flow [kg/s] from side a to side b and its derivatives by both pressures [Pa absolute]; shapes (n,).
@@ -61,64 +60,58 @@ class FlowElements:
         >>> round(1e6 * flow[0], 0)
         42.0
         """
-        up, down, difference, ellipse, by_up, by_down = self._work[:6]
-        np.subtract(p_a, p_b, out=difference)
-        np.maximum(p_a, p_b, out=up)
-        np.maximum(up, LEAST_PRESSURE_PA, out=up)
-        np.minimum(p_a, p_b, out=down)
-        self._ellipse(up, down, ellipse, by_up, by_down)
-        gain = self._gain(ellipse)
-        np.multiply(by_up, gain, out=by_up)
-        np.multiply(by_down, gain, out=by_down)
-        np.multiply(ellipse, self._flow.value, out=ellipse)
+        up, difference, ellipse, by_up, by_down = self._work[:5]
+        np.subtract(p_a, p_b, difference)
+        np.maximum(p_a, p_b, up)
+        self._fill_ellipse(up, difference, ellipse, by_up, by_down)
+        gain, slope = self._gain.value, self._gain.slope
+        self._fill_gain(ellipse)
+        np.multiply(by_up, slope, by_up)
+        np.multiply(by_down, slope, by_down)
+        np.multiply(ellipse, gain, ellipse)
         forward = difference >= 0.0
-        by_a = np.where(forward, by_up, by_down)
-        by_b = np.where(forward, by_down, by_up)
-        np.negative(by_b, out=by_b)
+        by_a, by_b = np.where(forward, by_up, by_down), np.where(forward, by_down, by_up)
+        np.negative(by_b, by_b)
         return np.copysign(ellipse, difference), by_a, by_b
 
-    def _ellipse(
-        self, up: FloatArray, down: FloatArray, ellipse: FloatArray, by_up: FloatArray, by_down: FloatArray
+    def _fill_ellipse(
+        self, up: FloatArray, difference: FloatArray, ellipse: FloatArray, by_up: FloatArray, by_down: FloatArray
     ) -> None:
-        """Fill De, ∂De/∂p_u and −∂De/∂p_d = 2 z (all shapes (n,))."""
-        complement, ratio_up, lower, drop, position = self._work[6:11]
-        np.log(up, out=position)
-        np.multiply(position, self._pressure_scale, out=position)
-        np.add(position, self._pressure_shift, out=position)
-        self._ratio.look_up(position)
-        ratio, ratio_slope = self._ratio.value, self._ratio.slope
-        np.subtract(1.0, ratio, out=complement)
-        np.multiply(ratio, up, out=ratio_up)
-        np.maximum(down, ratio_up, out=lower)
-        np.subtract(up, lower, out=drop)
-        np.subtract(lower, ratio_up, out=lower)
-        np.divide(lower, complement, out=lower)  # z
-        np.add(up, lower, out=ellipse)
-        np.multiply(ellipse, drop, out=ellipse)
-        np.add(lower, lower, out=by_down)
-        # ∂De/∂p_u = 2 ((1−b) p_u + b z) − (p_u − z)² db/dp_u
-        np.multiply(lower, ratio, out=lower)
-        np.subtract(up, ratio_up, out=by_up)
-        np.add(by_up, lower, out=by_up)
-        np.add(by_up, by_up, out=by_up)
-        np.divide(drop, complement, out=drop)
-        np.multiply(drop, drop, out=drop)
-        np.multiply(drop, ratio_slope, out=drop)
-        np.divide(drop, up, out=drop)
-        np.multiply(drop, self._pressure_scale, out=drop)
-        np.subtract(by_up, drop, out=by_up)
+        """De, ∂De/∂p_u and −∂De/∂p_d.
 
-    def _gain(self, ellipse: FloatArray) -> FloatArray:
-        """dm/dDe; leaves m/De in the flow table's value buffer."""
-        position = self._work[11]
-        np.maximum(ellipse, LEAST_ELLIPSE_PA2, out=position)
-        np.log(position, out=position)
-        np.multiply(position, self._flow_scale, out=position)
-        np.add(position, self._flow_shift, out=position)
-        self._flow.look_up(position)
-        conductance, slope = self._flow.value, self._flow.slope
-        np.exp(conductance, out=conductance)
-        np.multiply(slope, self._flow_scale, out=slope)
-        np.add(slope, 1.0, out=slope)
-        np.multiply(slope, conductance, out=slope)
-        return slope
+        With c = 1 − b, s = min(p_u − p_d, c p_u) and k = s/c = p_u − z: De = s (2 p_u − k), −∂De/∂p_d = 2 p_u − 2 k = 2 z,
+        ∂De/∂p_u = 2 z + 2 s + k² c′ with c′ = dc/dp_u.
+        """
+        drop, held, bent = self._work[5:8]
+        np.maximum(up, self._least_pressure, held)
+        np.log(held, bent)
+        np.multiply(bent, self._pressure_scale, bent)
+        np.add(bent, self._pressure_shift, bent)
+        self._complement.look_up(bent)
+        complement, slope = self._complement.value, self._complement.slope
+        np.absolute(difference, drop)
+        np.multiply(complement, up, ellipse)
+        np.minimum(drop, ellipse, drop)  # s
+        np.divide(drop, complement, complement)  # k
+        np.add(up, up, by_up)
+        np.subtract(by_up, complement, by_down)
+        np.multiply(drop, by_down, ellipse)
+        np.subtract(by_down, complement, by_down)
+        np.multiply(complement, complement, bent)
+        np.multiply(bent, slope, bent)
+        np.divide(bent, held, bent)
+        np.add(by_down, bent, by_up)
+        np.add(by_up, drop, by_up)
+        np.add(by_up, drop, by_up)
+
+    def _fill_gain(self, ellipse: FloatArray) -> None:
+        """m/De in the gain table's value, dm/dDe in its slope."""
+        position = self._work[7]
+        np.maximum(ellipse, self._least_ellipse, position)
+        np.log(position, position)
+        np.multiply(position, self._flow_scale, position)
+        np.add(position, self._flow_shift, position)
+        self._gain.look_up(np.maximum(position, 0.0, position))
+        value, slope = self._gain.value, self._gain.slope
+        np.exp(value, value)
+        np.multiply(slope, value, slope)

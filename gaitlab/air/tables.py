@@ -32,12 +32,12 @@ DENSE_POINTS = 1200
 class ElementTable:
     """The fast form of one flow part.
 
-    `ratio_rows`: b(p_u) over ln p_u, evenly spaced from `pressure_start` by `pressure_spacing`, which depend on the gas
-    alone. `flow_rows`: ln(m/De) over ln De, evenly spaced from `flow_start` by `flow_spacing`. Rows as in
-    `lookup.hermite_rows`.
+    `complement_rows`: 1 − b over ln p_u, evenly spaced from `pressure_start` by `pressure_spacing`, which depend on the
+    gas alone. `flow_rows`: ln(m/De) over ln De, evenly spaced from `flow_start` by `flow_spacing`; its slope is
+    d ln m/d ln De. Rows as in `lookup.hermite_rows`.
     """
 
-    ratio_rows: FloatArray
+    complement_rows: FloatArray
     pressure_start: float
     pressure_spacing: float
     flow_rows: FloatArray
@@ -47,7 +47,7 @@ class ElementTable:
     @property
     def nbytes(self) -> int:
         """Memory of the table [bytes]."""
-        return self.ratio_rows.nbytes + self.flow_rows.nbytes
+        return self.complement_rows.nbytes + self.flow_rows.nbytes
 
 
 def pressure_knots(gas: Gas) -> FloatArray:
@@ -64,30 +64,25 @@ def element_table(part: FlowPart, gas: Gas) -> ElementTable:
 
 
 def _iso_table(law: IsoLaw, pressures: FloatArray) -> ElementTable:
-    ratios = np.full(PRESSURE_KNOTS, law.critical_ratio)
+    complement = np.full(PRESSURE_KNOTS, 1.0 - law.critical_ratio)
     a, c = law.linear_Pa2_s_kg, law.square_Pa2_s2_kg2
     largest = law.ellipse_Pa2(float(pressures[-1]), 0.0)
-    ends = (math.log(1e-4 * a * a / c), math.log(largest))
-    log_ellipse = np.linspace(*ends, ELLIPSE_KNOTS)
+    log_ellipse = np.linspace(math.log(1e-4 * a * a / c), math.log(largest), ELLIPSE_KNOTS)
     root = np.sqrt(a * a + 4.0 * c * np.exp(log_ellipse))
-    log_flow = np.log(2.0 / (a + root))
-    slope = -0.5 * (1.0 - a / root)
-    return _table(pressures, hermite_rows(ratios, np.zeros(PRESSURE_KNOTS)), log_ellipse, log_flow, slope)
+    return _table(pressures, complement, log_ellipse, np.log(2.0 / (a + root)), -0.5 * (1.0 - a / root))
 
 
 def _duct_table(section: Section, gas: Gas) -> ElementTable:
     pressures = pressure_knots(gas)
     choked = np.array([mass_flux(choking_mach(section, p, gas), p, gas) * section.area_m2 for p in pressures])
-    ratios = 1.0 - _loss_Pa2(choked, section, gas) / pressures**2
-    slopes = CubicSpline(np.arange(PRESSURE_KNOTS), ratios)(np.arange(PRESSURE_KNOTS), 1)
+    complement = _loss_Pa2(choked, section, gas) / pressures**2
     per_reynolds = gas.viscosity_Pa_s() * section.area_m2 / section.hydraulic_m
     least = LINEAR_REYNOLDS * section.length_m / section.hydraulic_m * per_reynolds
     flow = np.geomspace(min(least, 1e-3 * choked[0]), choked[-1], DENSE_POINTS)
     log_loss, log_flow = np.log(_loss_Pa2(flow, section, gas)), np.log(flow)
     inverse = CubicSpline(log_loss, log_flow)
     log_ellipse = np.linspace(log_loss[0], log_loss[-1], ELLIPSE_KNOTS)
-    log_gain, slope = inverse(log_ellipse) - log_ellipse, inverse(log_ellipse, 1) - 1.0
-    return _table(pressures, hermite_rows(ratios, slopes), log_ellipse, log_gain, slope)
+    return _table(pressures, complement, log_ellipse, inverse(log_ellipse) - log_ellipse, inverse(log_ellipse, 1) - 1.0)
 
 
 def _loss_Pa2(flow_kg_s: FloatArray, section: Section, gas: Gas) -> FloatArray:
@@ -98,16 +93,18 @@ def _loss_Pa2(flow_kg_s: FloatArray, section: Section, gas: Gas) -> FloatArray:
 
 
 def _table(
-    pressures: FloatArray, ratio_rows: FloatArray, log_ellipse: FloatArray, log_gain: FloatArray, slope: FloatArray
+    pressures: FloatArray, complement: FloatArray, log_ellipse: FloatArray, log_gain: FloatArray, slope: FloatArray
 ) -> ElementTable:
-    spacing = float(log_ellipse[1] - log_ellipse[0])
-    per_knot = slope * spacing
-    per_knot[0] = 0.0  # constant below the first knot: a linear part, with a continuous slope
+    log_pressure = np.log(pressures)
+    pressure_step, flow_step = float(log_pressure[1] - log_pressure[0]), float(log_ellipse[1] - log_ellipse[0])
+    # Flat ends: what is held constant beyond the table joins it with a continuous slope.
+    ends = CubicSpline(log_pressure, complement, bc_type="clamped")
+    slope[0] = 0.0
     return ElementTable(
-        ratio_rows,
-        math.log(pressures[0]),
-        math.log(pressures[1] / pressures[0]),
-        hermite_rows(log_gain, per_knot),
+        hermite_rows(complement, ends(log_pressure, 1), pressure_step),
+        float(log_pressure[0]),
+        pressure_step,
+        hermite_rows(log_gain, slope, flow_step, slope_shift=1.0),
         float(log_ellipse[0]),
-        spacing,
+        flow_step,
     )
