@@ -64,29 +64,24 @@ def settled(travels_m: FloatArray, *, periods: int, scatter: float, floor_m: flo
     return bool(np.std(tail, ddof=1) <= max(scatter * abs(float(np.mean(tail))), floor_m))
 
 
-def slip(slide_m: FloatArray, loaded: BoolArray, travel_m: float) -> float:
-    """How far a foot slides while it carries weight, over the distance travelled: 0 planted, 1 dragged all the way.
+def slip(sole_m_s: FloatArray, loaded: BoolArray, sample_s: float, travel_m: float) -> float:
+    """How far a foot slides while it carries weight, over the distance travelled: 0 planted or rolling, 1 dragged all the way.
 
-    Σ over feet of the slid distance, divided by the number of feet that ever carry weight and by |travel|. `slide_m`
-    and `loaded` (T, F), `travel_m` over the same instants. nan without travel or without a loaded foot.
+    ∫|v_sole| dt over the loaded time, summed over the feet, divided by the number of feet that ever carry weight and by
+    |travel|. `sole_m_s` (T, F, 2) is the speed of the sole, not of the foot's middle: a round foot may roll. `loaded` (T, F);
+    `travel_m` over the same instants. nan without travel or without a loaded foot.
     """
     carrying = int(np.count_nonzero(loaded.any(axis=0)))
     if carrying == 0 or travel_m == 0.0:
         return float("nan")
-    return float(np.sum(slide_m[1:][loaded[1:]]) / (carrying * abs(travel_m)))
+    return float(np.sum(slid_m(sole_m_s, loaded, sample_s)) / (carrying * abs(travel_m)))
 
 
-def slid_m(foot_m: FloatArray, rolled_m: FloatArray, loaded: BoolArray) -> FloatArray:
-    """Distance that each loaded sole slid on the floor between samples, (T, F); the first row is zero.
-
-    The sole of a round foot moves by the centre's displacement less what the foot rolled: |Δcentre − Δrolled|, with
-    `foot_m` (T, F, 3) and `rolled_m` (T, F, 2) the accumulated rolling path r ∫ω dt. It counts where the foot is loaded
-    at both ends.
-    """
-    moved = np.diff(foot_m[..., :2], axis=0) - np.diff(rolled_m, axis=0)
-    both = loaded[1:] & loaded[:-1]
-    distance = np.hypot(moved[..., 0], moved[..., 1]) * both
-    return np.concatenate([np.zeros((1, loaded.shape[1])), distance])
+def slid_m(sole_m_s: FloatArray, loaded: BoolArray, sample_s: float) -> FloatArray:
+    """Distance that each sole slid between samples while loaded at both ends, (T − 1, F), by the trapezoidal rule."""
+    speed = np.hypot(sole_m_s[..., 0], sole_m_s[..., 1])
+    distance: FloatArray = 0.5 * sample_s * (speed[1:] + speed[:-1]) * (loaded[1:] & loaded[:-1])
+    return distance
 
 
 def mean_over_periods(values: FloatArray) -> float:

@@ -9,7 +9,7 @@ import numpy as np
 from scipy.interpolate import CubicSpline
 
 from gaitlab.errors import InputError, must
-from gaitlab.gait.motion import FloatArray
+from gaitlab.gait.motion import LOOK_EVERY, FloatArray
 from gaitlab.ring.waves import Waves
 
 # The body is looked at this often: 5 ms is a fiftieth of the fastest footfall met so far (chosen by us).
@@ -22,7 +22,7 @@ RAMP_SHARE = 0.6  # of the settling time goes into the ramp, the rest lets the b
 class Schedule:
     """One period as `samples` × `steps_per_sample` steps of `step_s`.
 
-    The step is the asked one made shorter, by under one sample in a period, so that a period is a whole number of steps:
+    The step is the asked one made shorter, by under four samples in a period, so that a period is a whole number of steps:
     one table of pressures then serves every period exactly and no phase error builds up.
     """
 
@@ -50,7 +50,8 @@ def schedule_of(period_s: float, step_s: float) -> Schedule:
     if not (math.isfinite(period_s) and period_s >= SAMPLES_MIN * step_s):
         rule = f"at least {SAMPLES_MIN} steps of {step_s * 1e3:g} ms"
         raise InputError(must("period", rule, f"{period_s * 1e3:g} ms", "shorten step_ms"))
-    samples = max(SAMPLES_MIN, math.ceil(period_s / max(SAMPLE_S, step_s) - 1e-9))
+    looks = max(SAMPLES_MIN // LOOK_EVERY, math.ceil(period_s / (LOOK_EVERY * max(SAMPLE_S, step_s)) - 1e-9))
+    samples = looks * LOOK_EVERY
     per_sample = max(1, math.ceil(period_s / (samples * step_s) - 1e-9))
     return Schedule(period_s, period_s / (samples * per_sample), samples, per_sample)
 
