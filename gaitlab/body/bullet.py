@@ -48,7 +48,8 @@ class BulletEngine:
     def joint_state(self) -> FloatArray:
         """Joint positions and speeds, shape (J, 2)."""
         states = pybullet.getJointStates(self._body, self._joints, physicsClientId=self._client)
-        return np.array([(state[0], state[1]) for state in states])
+        places, speeds, _, _ = zip(*states, strict=True)
+        return np.array((places, speeds)).T
 
     def step(self, torque: FloatArray) -> None:
         """Load torques (they last one step only) and step."""

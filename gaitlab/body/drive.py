@@ -17,7 +17,7 @@ FloatArray = NDArray[np.float64]
 class Drive:
     """The law of all joints: torque = pressure − K q − C q̇ − stop.
 
-    `per_Pa` (J, inlets) turns vacuum into torque; `feedback` (J, 2J) multiplies the flattened (q₁, q̇₁, q₂, q̇₂, …);
+    `per_Pa` (J, inlets) turns vacuum into torque; `feedback` (J, 2J) multiplies all q, then all q̇;
     `damping` is the C inside it (J, J).
     """
 
@@ -33,8 +33,8 @@ class Drive:
         joints = model.joints
         damping = step_damping(model, step_s=step_s, inertia_factor=inertia_factor)
         feedback = np.zeros((len(joints), 2 * len(joints)))
-        feedback[:, 0::2] = -np.diag([joint.stiffness for joint in joints])
-        feedback[:, 1::2] = -damping
+        feedback[:, : len(joints)] = -np.diag([joint.stiffness for joint in joints])
+        feedback[:, len(joints) :] = -damping
         return cls(
             per_Pa=_per_Pa(model),
             feedback=feedback,
@@ -49,7 +49,7 @@ class Drive:
 
     def torque(self, pressure_torque: FloatArray, state: FloatArray) -> FloatArray:
         """Torques or forces (J,) at one instant; `state` is (J, 2) of positions and speeds."""
-        torque = pressure_torque + self.feedback @ state.ravel()
+        torque = pressure_torque + self.feedback @ state.T.ravel()
         past = np.abs(state[:, 0]) - self.stop_at
         if past.max() > 0.0:
             torque -= np.sign(state[:, 0]) * self.stop_gain * np.maximum(past, 0.0) ** 2
