@@ -90,9 +90,7 @@ def _must_be_table(table: Any, place: Place) -> None:
 def _no_unknown(table: dict[str, Any], known: set[str], place: Place) -> None:
     for name in table:
         if name not in known:
-            raise fail(
-                (*place, name[:80]), "be a key that this table knows", fix=suggestion(name, known - table.keys())
-            )
+            raise fail((*place, name[:80]), "be a key that this table knows", fix=suggestion(name, known))
 
 
 def _required(record: type) -> set[str]:

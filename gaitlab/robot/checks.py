@@ -17,8 +17,8 @@ BLOCKS_MAX = 64
 
 def check_robot(robot: Robot) -> None:
     """Everything that one key alone cannot tell. Raises FaultError for the first rule broken."""
-    check_names(robot)
     _check_counts(robot)
+    check_names(robot)
     check_tree(robot)
     check_supply(robot)
     check_valves(robot)

@@ -26,11 +26,11 @@ class Fault:
         >>> Fault(("ring", "stages"), "be at least 1", "0").text("crawler.toml", 7)
         'crawler.toml, line 7, table [ring]: stages must be at least 1, got 0'
         """
-        *tables, key = self.place or ("file",)
+        tables, key = split(self.place)
         head = source if line is None else f"{source}, line {line}"
         if tables:
-            head += f", table {table_name(tuple(tables))}"
-        text = f"{head}: {key if isinstance(key, str) else ordinal(key)} must {self.rule}"
+            head += f", table {table_name(tables)}"
+        text = f"{head}: {key} must {self.rule}"
         text += f", got {self.got}" if self.got else ""
         return f"{text}; usual fix: {self.fix}" if self.fix else text
 
@@ -58,13 +58,18 @@ def quoted(value: object) -> str:
     return text if len(text) <= SHOWN_LENGTH else text[: SHOWN_LENGTH - 3] + "..."
 
 
-def ordinal(position: int) -> str:
-    """An array position (from 0) as a person counts.
+def split(place: Place) -> tuple[Place, str]:
+    """The table of a place and the name of what is wrong in it, array positions counted as a person counts.
 
-    >>> ordinal(0)
-    'item 1'
+    >>> split(("body", "block", 0, "size_mm", 1))
+    (('body', 'block', 0), 'size_mm item 2')
     """
-    return f"item {position + 1}"
+    end = len(place)
+    while end and isinstance(place[end - 1], int):
+        end -= 1
+    items = ", ".join(str(part + 1) for part in place[end:] if isinstance(part, int))
+    key = str(place[end - 1]) if end else "file"
+    return place[: max(0, end - 1)], f"{key} item {items}" if items else key
 
 
 def table_name(place: Place) -> str:

@@ -25,7 +25,7 @@ def suggestion(unknown: str, known: Iterable[str]) -> str:
         name_stem, unit = split_unit(name)
         if unit and stem.lower() == name_stem.lower():
             return f"did you mean {name}? (this file gives it in {unit.replace('_', ' ')})"
-    close = difflib.get_close_matches(unknown[:80], names, n=3, cutoff=0.6)
+    close = difflib.get_close_matches(unknown[:80], names, n=2, cutoff=0.6)
     if close:
         return "did you mean " + " or ".join(close) + "?"
     return "known here: " + ", ".join(names)
