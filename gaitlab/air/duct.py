@@ -28,10 +28,10 @@ def exact_mass_flow(part: FlowPart, p_up_Pa: float, p_down_Pa: float, gas: Gas) 
     return duct_flow(section_of(as_duct(part, gas)), first, second, gas).mass_flow_kg_s
 
 
-def duct_state(duct: Duct, p_up_Pa: float, p_down_Pa: float, gas: Gas) -> DuctState:
+def duct_state(duct: Duct, p_up_Pa: float, p_down_Pa: float, gas: Gas, *, roughness_m: float = 0.0) -> DuctState:
     """Flow, Reynolds and Mach numbers of a duct, from the higher to the lower pressure [Pa absolute]."""
     first, second = absolute_pressure_Pa("p_up_Pa", p_up_Pa), absolute_pressure_Pa("p_down_Pa", p_down_Pa)
-    return duct_flow(section_of(duct), max(first, second), min(first, second), gas)
+    return duct_flow(section_of(duct, roughness_m=roughness_m), max(first, second), min(first, second), gas)
 
 
 def as_duct(part: Duct | BenchRestrictor, gas: Gas) -> Duct:

@@ -24,12 +24,17 @@ def bench_mass_flow(reading: BenchRestrictor, gas: Gas) -> float:
     return pump_mass_flow(reading.reading_Pa, reading.dead_end_Pa, reading.free_flow_m3_s, reading.law, gas)[0]
 
 
+def check_vacuum(name: str, value: float, gas: Gas) -> None:
+    """Raise InputError unless `value` is a gauge vacuum between 0 and the ambient pressure."""
+    if not (math.isfinite(value) and 0 < value < gas.pressure_Pa):
+        rule = f"a gauge vacuum between 0 and the ambient {gas.pressure_Pa:g} Pa"
+        raise InputError(must(name, rule, value, "give the vacuum as a positive number below ambient pressure"))
+
+
 def check_reading(dead_end_Pa: float, reading_Pa: float, gas: Gas) -> None:
     """Raise InputError unless 0 < reading < dead end < ambient pressure (gauge vacuums)."""
-    for name, value in (("dead_end_Pa", dead_end_Pa), ("reading_Pa", reading_Pa)):
-        if not (math.isfinite(value) and 0 < value < gas.pressure_Pa):
-            rule = f"a gauge vacuum between 0 and the ambient {gas.pressure_Pa:g} Pa"
-            raise InputError(must(name, rule, value, "give the vacuum as a positive number below ambient pressure"))
+    check_vacuum("dead_end_Pa", dead_end_Pa, gas)
+    check_vacuum("reading_Pa", reading_Pa, gas)
     if reading_Pa >= dead_end_Pa:
         rule = f"below the dead-end vacuum of {dead_end_Pa:g} Pa"
         raise InputError(

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 from typing import TypeAlias
 
 import numpy as np
@@ -27,7 +27,8 @@ class Section:
     """A duct reduced to numbers.
 
     `f_re` is the Fanning friction factor times Reynolds of developed laminar flow on the hydraulic diameter;
-    `k_developing` and `c_developing` are Shah's K∞ and C' of the entrance region.
+    `k_developing` and `c_developing` are Shah's K∞ and C' of the entrance region. `roughness_m` is the height of the
+    wall's roughness (equivalent sand grain), felt in turbulent flow only.
     """
 
     area_m2: float
@@ -37,6 +38,7 @@ class Section:
     f_re: float
     k_developing: float
     c_developing: float
+    roughness_m: float = 0.0
 
     def laminar_Pa2_s_per_kg(self, viscosity_Pa_s: float, rt_J_kg: float) -> float:
         """a of the fully laminar limit p_u² − p_d² = a m: a = 4 fRe μ R T L/(A D_h²)."""
@@ -53,12 +55,19 @@ def rectangle_f_re(aspect: float) -> float:
     return 24.0 * sum(c * short_over_long**k for k, c in enumerate(RECTANGLE_POLYNOMIAL))
 
 
-def section_of(duct: Duct) -> Section:
+def section_of(duct: Duct, *, roughness_m: float = 0.0) -> Section:
     """Area, hydraulic diameter and friction constants of a square, rectangular or round duct.
 
     Raises InputError where a size is not finite and above zero.
     """
     _check_sizes(duct)
+    if not (math.isfinite(roughness_m) and roughness_m >= 0):
+        raise InputError(must("roughness_m", "finite and at least 0 m", roughness_m, "1 to 50 µm for printed channels"))
+    smooth = _smooth_section(duct)
+    return replace(smooth, roughness_m=roughness_m) if roughness_m else smooth
+
+
+def _smooth_section(duct: Duct) -> Section:
     if isinstance(duct, RoundDuct):
         area = math.pi * duct.bore_m**2 / 4.0
         return Section(area, duct.bore_m, duct.length_m, duct.inlet_loss, ROUND_F_RE, ROUND_K, ROUND_C)
