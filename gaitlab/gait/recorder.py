@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from scipy.ndimage import binary_closing
 
 from gaitlab.body.engine import Engine, FeetState
 from gaitlab.body.records import BodyModel
@@ -12,6 +13,8 @@ from gaitlab.gait.schedule import Schedule
 
 # A foot carries weight when the floor presses it with more than this part of the robot's weight (chosen by us).
 LOADED_WEIGHT = 0.01
+# A foot that is pushed along hops by micrometres and carries weight on the average: shorter gaps are no swing (chosen by us).
+HOP_S = 0.030
 # A sphere of a loaded foot stands when it is this near the floor: ten times the penetration at rest (chosen by us).
 STANDING_GAP_M = 1e-4
 
@@ -70,7 +73,8 @@ class Recorder:
     def _loaded(self, feet: list[FeetState]) -> BoolArray:
         model = self._engine.model
         weight = model.mass_kg * float(np.linalg.norm(model.gravity_m_s2))
-        return np.array([f.normal_N for f in feet]) > LOADED_WEIGHT * weight
+        loaded = np.array([f.normal_N for f in feet]) > LOADED_WEIGHT * weight
+        return without_hops(loaded, round(HOP_S / self._schedule.sample_s))
 
     def trace(self, gait_table: FloatArray) -> Trace | None:
         """The recorded motion for pictures, or None where none was asked for; `gait_table` as it drove the body."""
@@ -79,6 +83,7 @@ class Recorder:
         counts = np.array([count for count, _ in self._trace])
         feet = [self._feet[count] for count in counts]
         model, schedule = self._engine.model, self._schedule
+        loaded = self._loaded(self._feet)[counts]
         return Trace(
             parts=model.parts,
             inlets=model.inlets,
@@ -88,9 +93,19 @@ class Recorder:
             position_m=np.array([pose[0] for _, pose in self._trace]),
             quaternion=np.array([pose[1] for _, pose in self._trace]),
             vacuum_Pa=gait_table[(counts * schedule.steps_per_sample) % schedule.steps],
-            loaded=self._loaded(feet),
+            loaded=loaded,
             foot_m=np.array([f.position_m for f in feet]),
         )
+
+
+def without_hops(loaded: BoolArray, longest: int) -> BoolArray:
+    """Flags (T, F) with every gap of up to `longest` samples (rounded up to even) closed; stances keep their ends."""
+    reach = (longest + 1) // 2
+    if reach == 0 or len(loaded) == 0:
+        return loaded
+    padded = np.pad(loaded, ((2 * reach, 2 * reach), (0, 0)), mode="edge")
+    closed = binary_closing(padded, structure=np.ones((2 * reach + 1, 1)))
+    return np.asarray(closed[2 * reach : -2 * reach])
 
 
 def _lowest_corner(model: BodyModel, position_m: FloatArray, quaternion: FloatArray) -> FloatArray:

@@ -1,0 +1,169 @@
+"""The body in MuJoCo: the independent second engine for rechecks, from the same model and behind the same protocol."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from types import ModuleType
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.linalg import eigh
+from scipy.spatial.transform import Rotation
+
+from gaitlab.body.bristle import bristle_friction
+from gaitlab.body.drive import Drive
+from gaitlab.body.dynamics import free_joint_mass
+from gaitlab.body.engine import EngineSettings, FeetState
+from gaitlab.body.mujoco_scene import scene_xml
+from gaitlab.body.records import BodyModel
+from gaitlab.body.rotation import principal
+from gaitlab.errors import InputError, MissingExtraError, must
+
+FloatArray = NDArray[np.float64]
+SPRING_STABILITY_MAX = 4.0  # (step · ω)² of a semi-implicit Euler step with springs and no explicit damper [theory]
+
+
+def mujoco_module() -> ModuleType:
+    """The mujoco library; raises MissingExtraError where it is not installed."""
+    try:
+        import mujoco
+    except ImportError as error:
+        text = "engine mujoco needs the extra second-engine: pip install 'gaitlab[second-engine]'"
+        raise MissingExtraError(text) from error
+    return mujoco
+
+
+class MujocoEngine:
+    """A body model in its own MuJoCo world; see the Engine protocol.
+
+    Springs and dampers of the joints are MuJoCo's own and implicit, so the torques that are loaded hold the pressure and the
+    solid limits only: its `drive` has no feedback. Raises InputError for a step too long for the springs.
+    """
+
+    name = "mujoco"
+
+    def __init__(self, model: BodyModel, settings: EngineSettings) -> None:
+        _check_step(model, settings)
+        self._mujoco = mujoco_module()
+        self.model = model
+        self.settings = settings
+        drive = Drive.of(model, step_s=settings.step_s, inertia_factor=settings.inertia_factor)
+        self.drive = replace(drive, feedback=np.zeros_like(drive.feedback))
+        self._world = self._mujoco.MjModel.from_xml_string(scene_xml(model, settings))
+        self._data = self._mujoco.MjData(self._world)
+        _raise_inertia(self._mujoco, self._world, self._data, model, settings.inertia_factor)
+        self._mujoco.mj_forward(self._world, self._data)
+        self._foot_of = _foot_of_geom(self._mujoco, self._world, model)
+        self._links = [foot.link + 1 for foot in model.feet]
+        self._middles = np.array([np.mean(foot.centres_m, axis=0) for foot in model.feet]).reshape(-1, 3)
+        self._bristles = [index for index, foot in enumerate(model.feet) if foot.bristle]
+
+    def joint_state(self) -> FloatArray:
+        """Joint positions and speeds, shape (J, 2)."""
+        return np.column_stack([self._data.qpos[7:], self._data.qvel[6:]])
+
+    def step(self, torque: FloatArray) -> None:
+        """Load torques and step."""
+        self._data.qfrc_applied[6:] = torque
+        self._mujoco.mj_step(self._world, self._data)
+        if self._bristles:
+            self._comb()
+
+    def base_pose(self) -> tuple[FloatArray, FloatArray]:
+        """Root block's middle and orientation."""
+        return self._data.qpos[:3].copy(), self._data.qpos[[4, 5, 6, 3]].copy()
+
+    def base_velocity(self) -> tuple[FloatArray, FloatArray]:
+        """Velocity of the root link's centre of mass and its turning rate."""
+        rotation = self._refreshed().xmat[1].reshape(3, 3)
+        spin = rotation @ self._data.qvel[3:6]
+        arm = rotation @ np.array(self.model.links[0].com_m)
+        return self._data.qvel[:3] + np.cross(spin, arm), spin
+
+    def feet(self) -> FeetState:
+        """Places, speeds and loads of the feet."""
+        forces, count = self._foot_forces(), len(self.model.feet)
+        data = self._refreshed()
+        rotation = data.xmat[self._links].reshape(count, 3, 3)
+        place = data.xpos[self._links] + np.einsum("fij,fj->fi", rotation, self._middles)
+        # cvel is the speed of the point of each body that is at its tree's centre of mass.
+        spin, speed = data.cvel[self._links, :3], data.cvel[self._links, 3:]
+        velocity = speed + np.cross(spin, place - data.subtree_com[1])
+        turn = data.xquat[self._links][:, [1, 2, 3, 0]]
+        return FeetState(place, velocity, turn, spin.copy(), forces[:, 2])
+
+    def part_poses(self) -> tuple[FloatArray, FloatArray]:
+        """Centres and orientations of all parts of the picture."""
+        data, looks = self._refreshed(), self.model.looks
+        links = [look.link + 1 for look in looks]
+        rotation = data.xmat[links].reshape(len(looks), 3, 3)
+        place = data.xpos[links] + np.einsum("pij,pj->pi", rotation, np.array([look.centre_m for look in looks]))
+        turns = Rotation.from_quat(data.xquat[links][:, [1, 2, 3, 0]])
+        return place, np.asarray((turns * Rotation.from_quat([look.quaternion for look in looks])).as_quat())
+
+    def centre_of_mass(self) -> FloatArray:
+        """Centre of mass of the whole body."""
+        return np.asarray(self._refreshed().subtree_com[1].copy())
+
+    def close(self) -> None:
+        """Let go of the world; Python frees it."""
+        del self._data, self._world
+
+    def _refreshed(self):  # type: ignore[no-untyped-def]
+        """Data with places and speeds of the present state: a step leaves those of the state before it."""
+        self._mujoco.mj_kinematics(self._world, self._data)
+        self._mujoco.mj_comPos(self._world, self._data)
+        self._mujoco.mj_comVel(self._world, self._data)
+        return self._data
+
+    def _foot_forces(self) -> FloatArray:
+        """Force (F, 3) of the ground on every foot in the world."""
+        forces, in_contact = np.zeros((len(self.model.feet), 3)), np.zeros(6)
+        for index in range(self._data.ncon):
+            contact = self._data.contact[index]
+            self._mujoco.mj_contactForce(self._world, self._data, index, in_contact)
+            # The frame's rows are normal and tangents; the force acts on the second geom, away from the first.
+            sign = 1.0 if contact.geom2 in self._foot_of else -1.0
+            foot = self._foot_of[contact.geom2 if sign > 0 else contact.geom1]
+            forces[foot] += sign * contact.frame.reshape(3, 3).T @ in_contact[:3]
+        return forces
+
+    def _comb(self) -> None:
+        """Give every bristle foot the friction of the way it tends to slide, read from the force that holds it now."""
+        forces = self._foot_forces()
+        for geom, index in self._foot_of.items():
+            foot = self.model.feet[index]
+            if foot.bristle and forces[index, 2] > 0.0:
+                forward = self._data.xmat[foot.link + 1].reshape(3, 3)[:, 0]
+                friction = bristle_friction(foot.friction, -forces[index], forward)
+                self._world.geom_friction[geom, 0] = friction * self.model.ground_friction
+
+
+def _check_step(model: BodyModel, settings: EngineSettings) -> None:
+    mass = free_joint_mass(model, settings.inertia_factor)
+    stiffness = np.diag([joint.stiffness for joint in model.joints])
+    number = settings.step_s**2 * float(eigh(stiffness, mass, eigvals_only=True)[-1])
+    if number >= SPRING_STABILITY_MAX:
+        longest = settings.step_s * (SPRING_STABILITY_MAX / number) ** 0.5
+        rule, got = f"below {SPRING_STABILITY_MAX:g}", f"{number:.3g} at a step of {settings.step_s * 1e3:g} ms"
+        fix = f"a step below {longest * 1e3:.2g} ms or a higher inertia factor"
+        raise InputError(must("stability number (step·ω)² of the springs", rule, got, fix))
+
+
+def _raise_inertia(mujoco: ModuleType, world, data, model: BodyModel, factor: float) -> None:  # type: ignore[no-untyped-def]
+    """Put in the inertia with its numerical factor, then let MuJoCo work out anew what hangs on it."""
+    for index, link in enumerate(model.links):
+        moments, (x, y, z, w) = principal(link.inertia(factor))
+        world.body_inertia[index + 1] = moments
+        world.body_iquat[index + 1] = (w, x, y, z)
+    world.body_sameframe[:] = 0  # the inertia frames are no longer the bodies' own, nor are shortcuts through them
+    mujoco.mj_setConst(world, data)
+
+
+def _foot_of_geom(mujoco: ModuleType, world, model: BodyModel) -> dict[int, int]:  # type: ignore[no-untyped-def]
+    """Index of the foot by the number of the geom."""
+    return {
+        mujoco.mj_name2id(world, mujoco.mjtObj.mjOBJ_GEOM, f"f{index}_{sphere}"): index
+        for index, foot in enumerate(model.feet)
+        for sphere in range(len(foot.centres_m))
+    }
