@@ -6,7 +6,7 @@ from gaitlab.air.fanno import DuctState, duct_flow
 from gaitlab.air.gas import Gas, absolute_pressure_Pa
 from gaitlab.air.iso import iso_law
 from gaitlab.air.restrictor import equivalent_square
-from gaitlab.air.section import Duct, section_of
+from gaitlab.air.section import SMOOTH_WALL_M, Duct, section_of
 from gaitlab.robot.circuit import BenchRestrictor, FlowPart, IsoPart
 
 
@@ -28,7 +28,9 @@ def exact_mass_flow(part: FlowPart, p_up_Pa: float, p_down_Pa: float, gas: Gas) 
     return duct_flow(section_of(as_duct(part, gas)), first, second, gas).mass_flow_kg_s
 
 
-def duct_state(duct: Duct, p_up_Pa: float, p_down_Pa: float, gas: Gas, *, roughness_m: float = 0.0) -> DuctState:
+def duct_state(
+    duct: Duct, p_up_Pa: float, p_down_Pa: float, gas: Gas, *, roughness_m: float = SMOOTH_WALL_M
+) -> DuctState:
     """Flow, Reynolds and Mach numbers of a duct, from the higher to the lower pressure [Pa absolute]."""
     first, second = absolute_pressure_Pa("p_up_Pa", p_up_Pa), absolute_pressure_Pa("p_down_Pa", p_down_Pa)
     return duct_flow(section_of(duct, roughness_m=roughness_m), max(first, second), min(first, second), gas)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from gaitlab.air.gas import Gas
-from gaitlab.air.section import Duct, Section, section_of
+from gaitlab.air.section import SMOOTH_WALL_M, Duct, Section, section_of
 
 KNUDSEN_MAX = (
     0.01  # above it gas slips at the wall (Gad-el-Hak, The fluid mechanics of microdevices, 1999: 0.001 to 0.1)
@@ -17,7 +17,7 @@ def knudsen_number(duct: Duct, pressure_Pa: float, gas: Gas) -> float:
     return gas.mean_free_path_m(pressure_Pa) / section_of(duct).hydraulic_m
 
 
-def duct_warnings(duct: Duct, lowest_Pa: float, gas: Gas, *, roughness_m: float = 0.0) -> tuple[str, ...]:
+def duct_warnings(duct: Duct, lowest_Pa: float, gas: Gas, *, roughness_m: float = SMOOTH_WALL_M) -> tuple[str, ...]:
     """What makes the flow through this duct doubtful, each text beginning with its name; empty when nothing does.
 
     knudsen: the gas is too thin at `lowest_Pa` (the lower of the two absolute pressures). aspect_ratio: shorter than wide.
