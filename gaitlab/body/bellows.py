@@ -287,7 +287,7 @@ def _check_volume(law: BellowsLaw, bellows: Bellows) -> None:
 
 def _no_solid_text(bellows: Bellows) -> str:
     return (
-        f"bellows.{bellows.name}: no solid limit is given; {STOP_BEYOND_MEASURED:g} times the measured free "
+        f"no_solid_limit: bellows {bellows.name} states none; {STOP_BEYOND_MEASURED:g} times the measured free "
         "deflection is used"
     )
 
@@ -299,6 +299,6 @@ def _no_lever_text(bellows: Bellows) -> str:
 
 def _spine_text(bellows: Bellows) -> str:
     return (
-        f"bellows.{bellows.name}: axial stiffness is that of the convolutions alone; a stiff spine adds to it, and it "
-        "decides the sign of the travel: measure it"
+        f"axial_from_drawing: the axial stiffness of bellows {bellows.name} is that of the convolutions alone; a stiff "
+        "spine adds to it, and it decides the sign of the travel: measure it"
     )

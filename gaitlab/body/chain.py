@@ -33,6 +33,7 @@ class Station:
     along_m: float
     kind: str
     axis: Vector
+    unit: str
     stiffness: float
     damping: float
     stop_at: float = math.inf
@@ -149,7 +150,7 @@ def _chain_slide(chain: Chain, bending: Sequence[ChainUnit]) -> Station:
     """The lengthwise give of the bending bellows in series, as one slide; positive is longer."""
     compliance = sum(1.0 / unit.law.axial_stiffness for unit in bending)
     slow = sum(unit.bellows.axial_damping_s / unit.law.axial_stiffness for unit in bending)
-    return Station(0.0, "prismatic", _vector(-chain.axes[:, 2]), 1.0 / compliance, slow / compliance**2)
+    return Station(0.0, "prismatic", _vector(-chain.axes[:, 2]), "", 1.0 / compliance, slow / compliance**2)
 
 
 def _unit_stations(chain: Chain, unit: ChainUnit) -> list[Station]:
@@ -177,6 +178,7 @@ def _turns(chain: Chain, unit: ChainUnit, at: Sequence[float], *, actuated: bool
             along_m=unit.start_m + fraction * unit.bellows.length_m,
             kind="revolute",
             axis=_vector(chain.bend_axis(unit)),
+            unit=unit.unit.inlet,
             stiffness=stiffness,
             damping=stiffness * unit.bellows.bend_damping_s,
             stop_at=law.solid / count if actuated else math.inf,
@@ -195,6 +197,7 @@ def _slides(chain: Chain, unit: ChainUnit) -> list[Station]:
             along_m=unit.start_m + fraction * unit.bellows.length_m,
             kind="prismatic",
             axis=_vector(-chain.axes[:, 2]),
+            unit=unit.unit.inlet,
             stiffness=stiffness,
             damping=stiffness * unit.bellows.axial_damping_s,
             stop_at=law.solid / count,

@@ -26,8 +26,6 @@ AXIAL_STABILITY_MAX = 2.7
 EXPLICIT_STABILITY_MAX = 4.0
 # Below this buckling margin gaits alternate from period to period [measured].
 BUCKLING_MARGIN_DOUBTFUL = 2.0
-# Friction from here on makes the order of wirings hang on numerical choices [measured].
-FRICTION_DOUBTFUL = 1.0
 
 
 def check_body(model: BodyModel) -> BodyModel:
@@ -35,7 +33,7 @@ def check_body(model: BodyModel) -> BodyModel:
     if len(model.joints) > JOINTS_MAX:
         fix = "fewer segments for each bellows"
         raise InputError(must("number of joints", f"at most {JOINTS_MAX}", len(model.joints), fix))
-    warnings = [*model.warnings, *_reach(model), *_buckling(model), *_doubts(model)]
+    warnings = [*model.warnings, *_reach(model), *_buckling(model)]
     return replace(model, warnings=tuple(dict.fromkeys(warnings)))
 
 
@@ -50,7 +48,9 @@ def _reach(model: BodyModel) -> list[str]:
             got, fix = f"{gap * 1e3:.3g} mm", "make it longer or mount it lower"
             raise InputError(must(f"leg {chain.name}: gap to the ground", f"at most {limit * 1e3:.3g} mm", got, fix))
         if gap > 0.1 * limit:
-            warnings.append(f"leg {chain.name} hangs {gap * 1e3:.2g} mm above the ground that the other feet stand on")
+            warnings.append(
+                f"leg_gap: leg {chain.name} hangs {gap * 1e3:.2g} mm above the ground that the other feet stand on"
+            )
     return warnings
 
 
@@ -108,27 +108,10 @@ def _buckling(model: BodyModel) -> list[str]:
             raise InputError(must(f"leg {chain.name}: buckling load", rule, f"{load:.3g} N", fix))
         if load < BUCKLING_MARGIN_DOUBTFUL * stance:
             warnings.append(
-                f"leg {chain.name}: buckling load {load:.3g} N is {load / stance:.2g} times its load with half the legs "
-                f"down ({stance:.3g} N); under {BUCKLING_MARGIN_DOUBTFUL:g} times gaits may alternate from period to period"
+                f"buckling_margin: leg {chain.name} folds at {load:.3g} N, {load / stance:.2g} times its load with half the legs down "
+                f"({stance:.3g} N); under {BUCKLING_MARGIN_DOUBTFUL:g} times gaits may alternate from period to period"
             )
     return warnings
-
-
-def _doubts(model: BodyModel) -> list[str]:
-    warnings = []
-    for foot in model.feet:
-        friction = max(foot.friction) * model.ground_friction
-        if friction >= FRICTION_DOUBTFUL and not foot.bristle:
-            warnings.append(f"foot of {foot.name}: friction {friction:.2g} of 1 or more makes the ranking less certain")
-        if foot.leg and len(foot.centres_m) == 1 and _in_a_row(model):
-            warnings.append(f"foot of {foot.name}: one sphere on legs in a row lets the body roll over")
-    return warnings
-
-
-def _in_a_row(model: BodyModel) -> bool:
-    origins = link_origins(model)
-    sides = [origins[foot.link][1] + np.mean([c[1] for c in foot.centres_m]) for foot in model.feet]
-    return bool(np.ptp(sides) < 1e-4)
 
 
 def check_step(model: BodyModel, *, step_s: float, inertia_factor: float) -> None:
@@ -150,17 +133,20 @@ def _too_long(name: str, limit: float, number: float, step_s: float) -> None:
 def axial_numbers(model: BodyModel, *, step_s: float) -> dict[str, float]:
     """2·step·k·τ/m of every chain that has a slide: m is the leg's mass, or both sides of a spine in series."""
     numbers: dict[str, float] = {}
-    for index, joint in enumerate(model.joints):
-        if joint.kind == "prismatic":
-            chain = next(chain for chain in model.chains if chain.name == joint.chain)
-            mass = _mass_beyond(model, index + 1)
-            if not chain.leg:
-                mass = mass * (model.mass_kg - mass) / model.mass_kg
-            numbers[chain.name] = max(numbers.get(chain.name, 0.0), 2.0 * step_s * joint.damping / mass)
+    slides = [(j, index + 1) for index, j in enumerate(model.joints) if j.kind == "prismatic"]
+    for joint, link in slides:
+        chain = next(chain for chain in model.chains if chain.name == joint.chain)
+        mass = mass_beyond(model, link)
+        if not chain.leg:
+            mass = mass * (model.mass_kg - mass) / model.mass_kg
+        in_series = sum(other.chain == joint.chain and other.unit == joint.unit for other, _ in slides)
+        number = 2.0 * step_s * joint.damping / in_series / mass
+        numbers[chain.name] = max(numbers.get(chain.name, 0.0), number)
     return numbers
 
 
-def _mass_beyond(model: BodyModel, first: int) -> float:
+def mass_beyond(model: BodyModel, first: int) -> float:
+    """Mass [kg] of a link and of everything that hangs on it."""
     beyond = {first}
     for index in range(first + 1, len(model.links)):
         if model.links[index].parent in beyond:

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.linalg import helmert
 
 from gaitlab.body.dynamics import free_joint_mass
 from gaitlab.body.records import BodyModel
@@ -59,19 +60,34 @@ class Drive:
 def step_damping(model: BodyModel, *, step_s: float, inertia_factor: float) -> FloatArray:
     """Damping matrix (J, J) that one explicit step of `step_s` can take.
 
-    Slides keep their own c. Turns of light segments would need tens of kHz, so theirs is the linearly implicit damper
-    C̃ = (C⁻¹ + Δt M⁻¹)⁻¹ with the mass matrix M frozen at zero pose: no mode is damped faster than 1/Δt, slow modes keep
-    their damping, statics do not see it.
+    The lengthwise motion of a whole bellows keeps its own c. What moves only light segments (the turns, and the segments of
+    one bellows against each other) would need tens of kHz, so it gets the linearly implicit damper C̃ = (C⁻¹ + Δt M⁻¹)⁻¹
+    with the mass matrix M frozen at zero pose: no such mode is damped faster than 1/Δt, slow modes keep their damping,
+    statics do not see it. Lengthwise motion must not be among them: its true mass is the trunk once the foot stands.
     """
-    joints = model.joints
-    plain = np.array([joint.damping for joint in joints])
-    turns = np.array([index for index, joint in enumerate(joints) if joint.implicit], dtype=int)
-    damping = np.diag(plain)
-    if turns.size:
-        mass = free_joint_mass(model, inertia_factor)[np.ix_(turns, turns)]
-        soft = np.linalg.inv(np.diag(1.0 / plain[turns]) + step_s * np.linalg.inv(mass))
-        damping[np.ix_(turns, turns)] = 0.5 * (soft + soft.T)
-    return damping
+    plain = np.diag([joint.damping for joint in model.joints])
+    light = light_motions(model)
+    if not light.shape[1]:
+        return plain
+    mass = light.T @ free_joint_mass(model, inertia_factor) @ light
+    stiff = light.T @ plain @ light
+    soft = np.linalg.inv(np.linalg.inv(stiff) + step_s * np.linalg.inv(mass))
+    return np.asarray(plain + light @ (0.5 * (soft + soft.T) - stiff) @ light.T)
+
+
+def light_motions(model: BodyModel) -> FloatArray:
+    """Orthonormal directions (J, n) of joint space that move light segments only: turns, and slides of one bellows apart."""
+    columns = []
+    slides: dict[tuple[str, str], list[int]] = {}
+    for index, joint in enumerate(model.joints):
+        if joint.kind == "revolute":
+            columns.append(np.eye(len(model.joints))[index])
+        else:
+            slides.setdefault((joint.chain, joint.unit), []).append(index)
+    for members in slides.values():
+        for mode in helmert(len(members)) if len(members) > 1 else ():
+            columns.append(np.bincount(members, weights=mode, minlength=len(model.joints)))
+    return np.array(columns).reshape(-1, len(model.joints)).T
 
 
 def _per_Pa(model: BodyModel) -> FloatArray:

@@ -18,6 +18,7 @@ from gaitlab.gait.records import Part
 from gaitlab.robot.circuit import Vector
 from gaitlab.robot.parts import Block, Foot, Leg, Spine
 from gaitlab.robot.records import Robot
+from gaitlab.robot.tree import root_block
 
 __all__ = ["BodyModel", "body_model"]
 
@@ -25,7 +26,7 @@ FloatArray = NDArray[np.float64]
 
 
 def body_model(robot: Robot) -> BodyModel:
-    """The engine-neutral body of a robot, checked: every leg reaches the ground, no column buckles, the tree is a tree.
+    """The engine-neutral body of a robot, checked: every leg reaches the ground, no column buckles.
 
     Raises InputError naming the number and its limit; what is legal but doubtful is in the model's `warnings`.
     """
@@ -45,7 +46,7 @@ class _Builder:
         self.chains: list[ChainModel] = []
 
     def built(self) -> BodyModel:
-        root = root_block(self.robot)
+        root = self.block_named(root_block(self.robot))
         self.links.append(_link(root.name, -1, self.block_solids(root, np.zeros(3)), None, None))
         self.add_block(root, 0, np.zeros(3))
         model = BodyModel(
@@ -89,10 +90,8 @@ class _Builder:
         self.add_foot(leg.name, foot, last, middle - chain.place(last_joint), leg=True)
 
     def add_spine(self, spine: Spine, parent: int, head: FloatArray) -> None:
-        if spine.rear in self.blocks:
-            raise InputError(must(f"spine {spine.name}.rear", "a block that no other spine carries", spine.rear))
         chain = chain_of(self.robot, spine, self.laws)
-        block = next(block for block in self.robot.body.blocks if block.name == spine.rear)
+        block = self.block_named(spine.rear)
         centre = chain.place(chain.length_m) - np.array(spine.rear_at_m)
         solids = tuple(self.block_solids(block, centre))
         last = self.add_chain(chain, parent, head, solids, leg=False, rigid_end=True)
@@ -152,6 +151,9 @@ class _Builder:
             part = Part(f"{name}.foot{index + 1}", "sphere", (foot.radius_m, 0.0, 0.0), centre, None, name)
             self.looks.append(Look(part, link, centre, (0.0, 0.0, 0.0, 1.0)))
 
+    def block_named(self, name: str) -> Block:
+        return next(block for block in self.robot.body.blocks if block.name == name)
+
     def block_solids(self, block: Block, centre: FloatArray) -> list[Solid]:
         """A block with its payloads and skids, its middle at `centre`."""
         solids = [box(block.mass_kg, block.size_m, centre)]
@@ -161,34 +163,6 @@ class _Builder:
                 foot = self.robot.foot_named(skid.foot)
                 solids += foot_solids(foot, centre + skid.at_m)
         return solids
-
-
-def root_block(robot: Robot) -> Block:
-    """The block that is no spine's rear; raises InputError where spines make a loop or leave a block unreached."""
-    rears = [spine.rear for spine in robot.body.spines]
-    for name in rears:
-        if rears.count(name) > 1:
-            raise InputError(must("body.spine.rear", "a different block for each spine", name, "a body is a tree"))
-    roots = [block for block in robot.body.blocks if block.name not in rears]
-    if len(roots) != 1:
-        names = ", ".join(block.name for block in roots) or "none"
-        fix = "join the blocks by spines into one tree without a loop"
-        raise InputError(must("body", "one tree with exactly one block that is no spine's rear", names, fix))
-    _no_loop(robot, roots[0])
-    return roots[0]
-
-
-def _no_loop(robot: Robot, root: Block) -> None:
-    reached, waiting = {root.name}, [root.name]
-    while waiting:
-        front = waiting.pop()
-        rears = [spine.rear for spine in robot.body.spines if spine.front == front]
-        reached.update(rears)
-        waiting += rears
-    lost = [block.name for block in robot.body.blocks if block.name not in reached]
-    if lost:
-        fix = "let every block be the rear of one spine that leads back to the root"
-        raise InputError(must("body.spine", "a tree without a loop", "blocks in a loop: " + ", ".join(lost), fix))
 
 
 def foot_names(robot: Robot) -> tuple[str, ...]:
@@ -234,12 +208,12 @@ def _joint(chain: Chain, station: Station, origin: FloatArray) -> Joint:
         axis=station.axis,
         origin_m=_vector(origin),
         chain=chain.name,
+        unit=station.unit,
         stiffness=station.stiffness,
         damping=station.damping,
         stop_at=station.stop_at,
         stop_gain=station.stop_gain,
         actuation=station.actuation,
-        implicit=station.kind == "revolute",
     )
 
 

@@ -24,19 +24,20 @@ class Joint:
     """The joint that carries a link: a slide along or a turn about `axis` (unit vector) at `origin_m` in the parent's frame.
 
     Torque or force along the axis: actuation by inlet · vacuum − stiffness · q − damping · q̇ − stop_gain · (|q| − stop_at)²
-    with the sign of q, the last only past `stop_at`. `implicit` dampers act through the mass matrix (see Drive).
+    with the sign of q, the last only past `stop_at`. `unit` names the bellows (by its inlet) that the joint is a segment of;
+    it is empty for the slide that stands for the lengthwise give of a chain's bending bellows.
     """
 
     kind: str  # "revolute" | "prismatic"
     axis: Vector
     origin_m: Vector
     chain: str
+    unit: str
     stiffness: float
     damping: float
     stop_at: float
     stop_gain: float
     actuation: tuple[tuple[str, float], ...]
-    implicit: bool
 
 
 @dataclass(frozen=True)
