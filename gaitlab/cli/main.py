@@ -17,6 +17,7 @@ from gaitlab.errors import GaitlabError
 COMMANDS = {
     "check": "Read a robot file and say what it will be.",
     "new": "Write a commented starter robot file.",
+    "sheet": "One A4 page for the bench from a saved run.",
 }
 
 EXIT_BAD_INPUT = 2

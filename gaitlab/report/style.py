@@ -7,6 +7,7 @@ from paper (atmosphere) to deep blue (evacuated), so that a grey copy still read
 
 from __future__ import annotations
 
+import io
 from pathlib import Path
 from typing import Any
 
@@ -16,7 +17,7 @@ from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.colors import LinearSegmentedColormap, to_rgb
 from matplotlib.figure import Figure
 
-from gaitlab.errors import InputError, must
+from gaitlab.errors import InputError, RunFolderError, must
 
 INK = "#1d2730"
 MUTED = "#66727d"
@@ -56,6 +57,7 @@ RC: dict[str, Any] = {
     "legend.frameon": False,
     "legend.fontsize": 8,
     "hatch.linewidth": 0.8,
+    "text.parse_math": False,  # a dollar sign in a robot's name is a dollar sign
     "svg.hashsalt": "gaitlab",
     "svg.fonttype": "none",
     "pdf.fonttype": 42,
@@ -108,11 +110,20 @@ def save_figure(figure: Figure, path: str | Path, *, dpi: int = 160) -> Path:
     Raises InputError for another ending or a folder that is not there.
     """
     target = Path(path)
-    ending = target.suffix.lower()
-    if ending not in STILL_METADATA:
-        raise InputError(must("picture file", "named .png, .svg or .pdf", target.name))
-    if not target.parent.is_dir():
-        raise InputError(must("folder of the picture", "there already", str(target.parent), "make it first"))
-    with styled():
-        figure.savefig(target, dpi=dpi, metadata=STILL_METADATA[ending])
+    content = figure_bytes(figure, target.suffix.lower(), dpi=dpi)
+    try:
+        target.write_bytes(content)
+    except OSError as error:
+        reason = (error.strerror or str(error)).lower()
+        raise RunFolderError(must("picture file", "writable", str(target), reason)) from error
     return target
+
+
+def figure_bytes(figure: Figure, ending: str, *, dpi: int = 160) -> bytes:
+    """The figure as the bytes of a PNG, SVG or PDF file. Raises InputError for another ending."""
+    if ending not in STILL_METADATA:
+        raise InputError(must("ending of a picture file", ".png, .svg or .pdf", ending))
+    buffer = io.BytesIO()
+    with styled():
+        figure.savefig(buffer, format=ending[1:], dpi=dpi, metadata=STILL_METADATA[ending])
+    return buffer.getvalue()

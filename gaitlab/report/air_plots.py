@@ -1,0 +1,74 @@
+"""Flow through one channel over the pressure behind it, with the point in question and where it chokes."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from matplotlib.axes import Axes
+from matplotlib.figure import Figure
+
+from gaitlab.report.style import BLUE, INK, MUTED, ORANGE, RULE, bare, new_figure, styled
+
+KPA = 1e3
+MG = 1e6
+ROOM_ABOVE = 1.35  # the parabola leaves the picture at this share of the choked flow; chosen by us
+
+
+@dataclass(frozen=True)
+class DuctCurve:
+    """Mass flow [kg/s] against downstream pressure [Pa absolute], rising in pressure, at one upstream pressure.
+
+    `laminar_kg_s` is the fully laminar formula at the same pressures. Below `choking_Pa` the flow no longer changes.
+    """
+
+    title: str
+    up_Pa: float
+    down_Pa: Sequence[float]
+    flow_kg_s: Sequence[float]
+    laminar_kg_s: Sequence[float]
+    choking_Pa: float
+    point_down_Pa: float
+    point_flow_kg_s: float
+
+
+def duct_plot(curve: DuctCurve) -> Figure:
+    """The curve, the choked range shaded, the asked-for point labelled; pressures in kPa absolute, flow in mg/s."""
+    with styled():
+        figure = new_figure(140, 92)
+        ax = figure.subplots()
+        down = [p / KPA for p in curve.down_Pa]
+        ax.plot(
+            down, [m * MG for m in curve.laminar_kg_s], color=MUTED, lw=1.2, ls=(0, (4, 3)), label="laminar formula"
+        )
+        ax.plot(down, [m * MG for m in curve.flow_kg_s], color=BLUE, lw=2.2, label="flow with friction and choking")
+        ax.set_xlim(0.0, curve.up_Pa / KPA)
+        ax.set_ylim(0.0, ROOM_ABOVE * MG * max(curve.flow_kg_s))
+        _choked_range(ax, curve)
+        _point(ax, curve)
+        ax.set_xlabel(f"pressure behind the channel (kPa absolute), {curve.up_Pa / KPA:.5g} kPa before it")
+        ax.set_ylabel("mass flow (mg/s)")
+        ax.set_title(curve.title)
+        ax.legend(loc="lower left")
+        bare(ax, grid="both")
+    return figure
+
+
+def _choked_range(ax: Axes, curve: DuctCurve) -> None:
+    edge = curve.choking_Pa / KPA
+    ax.axvspan(0.0, edge, color=RULE, alpha=0.55, lw=0)
+    ax.text(0.5 * edge, 0.04, "choked", transform=ax.get_xaxis_transform(), ha="center", va="bottom", color=MUTED)
+
+
+def _point(ax: Axes, curve: DuctCurve) -> None:
+    at, flow = curve.point_down_Pa / KPA, curve.point_flow_kg_s * MG
+    ax.plot(at, flow, ls="", marker="o", ms=7, mfc="white", mec=ORANGE, mew=2)
+    left = at > 0.6 * curve.up_Pa / KPA
+    ax.annotate(
+        f"{flow:.4g} mg/s at {at:.4g} kPa",
+        (at, flow),
+        textcoords="offset points",
+        xytext=(-8 if left else 8, 10),
+        ha="right" if left else "left",
+        color=INK,
+    )
