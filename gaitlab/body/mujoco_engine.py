@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import importlib
 from dataclasses import replace
 from types import ModuleType
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -26,11 +28,10 @@ SPRING_STABILITY_MAX = 4.0  # (step · ω)² of a semi-implicit Euler step with 
 def mujoco_module() -> ModuleType:
     """The mujoco library; raises MissingExtraError where it is not installed."""
     try:
-        import mujoco
+        return importlib.import_module("mujoco")
     except ImportError as error:
         text = "engine mujoco needs the extra second-engine: pip install 'gaitlab[second-engine]'"
         raise MissingExtraError(text) from error
-    return mujoco
 
 
 class MujocoEngine:
@@ -109,7 +110,7 @@ class MujocoEngine:
         """Let go of the world; Python frees it."""
         del self._data, self._world
 
-    def _refreshed(self):  # type: ignore[no-untyped-def]
+    def _refreshed(self) -> Any:
         """Data with places and speeds of the present state: a step leaves those of the state before it."""
         self._mujoco.mj_kinematics(self._world, self._data)
         self._mujoco.mj_comPos(self._world, self._data)
@@ -150,7 +151,7 @@ def _check_step(model: BodyModel, settings: EngineSettings) -> None:
         raise InputError(must("stability number (step·ω)² of the springs", rule, got, fix))
 
 
-def _raise_inertia(mujoco: ModuleType, world, data, model: BodyModel, factor: float) -> None:  # type: ignore[no-untyped-def]
+def _raise_inertia(mujoco: ModuleType, world: Any, data: Any, model: BodyModel, factor: float) -> None:
     """Put in the inertia with its numerical factor, then let MuJoCo work out anew what hangs on it."""
     for index, link in enumerate(model.links):
         moments, (x, y, z, w) = principal(link.inertia(factor))
@@ -160,7 +161,7 @@ def _raise_inertia(mujoco: ModuleType, world, data, model: BodyModel, factor: fl
     mujoco.mj_setConst(world, data)
 
 
-def _foot_of_geom(mujoco: ModuleType, world, model: BodyModel) -> dict[int, int]:  # type: ignore[no-untyped-def]
+def _foot_of_geom(mujoco: ModuleType, world: Any, model: BodyModel) -> dict[int, int]:
     """Index of the foot by the number of the geom."""
     return {
         mujoco.mj_name2id(world, mujoco.mjtObj.mjOBJ_GEOM, f"f{index}_{sphere}"): index
