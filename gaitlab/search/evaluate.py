@@ -1,0 +1,103 @@
+"""One evaluation: a wiring's ring and its walk. The same function runs in this process, in workers and on a cluster."""
+
+from __future__ import annotations
+
+import json
+import math
+import time
+from collections.abc import Callable
+from dataclasses import dataclass
+from functools import lru_cache
+from typing import TypeAlias
+
+from gaitlab.errors import InputError
+from gaitlab.gait.records import Walk, WaveReading
+from gaitlab.robot.reader import robot_from_document
+from gaitlab.robot.records import Robot
+from gaitlab.search.settings import WalkSettings
+from gaitlab.wiring.wiring import Wiring
+
+WORKER_LOST = "worker_lost"
+REFUSED = "refused"
+
+
+@dataclass(frozen=True)
+class Job:
+    """What an evaluation needs: the robot's document as JSON, a wiring, how to walk it, and the ledger's key for it."""
+
+    document_json: str
+    wiring: Wiring
+    settings: WalkSettings
+    key: str
+
+
+@dataclass(frozen=True)
+class Evaluation:
+    """The walk that a job came to, and the wall time it took."""
+
+    walk: Walk
+    wall_s: float
+
+
+Evaluate: TypeAlias = Callable[[Job], Evaluation]
+
+
+def evaluate(job: Job) -> Evaluation:
+    """Solves the ring under the job's wiring and walks the robot on its waves.
+
+    A combination that a model refuses ends as the outcome ``refused`` with the refusal as remedy, so that one wiring
+    cannot end a search.
+    """
+    from gaitlab.gait.walk import walk
+    from gaitlab.ring.solve import ring_run
+
+    begin = time.perf_counter()
+    robot, how = robot_of(job.document_json), job.settings
+    try:
+        ring = ring_run(robot, job.wiring)
+        done, _ = walk(
+            robot,
+            job.wiring,
+            ring,
+            engine=how.engine,
+            step_s=how.step_s,
+            inertia_factor=how.inertia_factor,
+            periods=how.periods,
+        )
+    except InputError as error:
+        done = failed_walk(job, REFUSED, str(error))
+    return Evaluation(done, time.perf_counter() - begin)
+
+
+@lru_cache(maxsize=4)
+def robot_of(document_json: str) -> Robot:
+    """The robot of a document, read once per process."""
+    return robot_from_document(json.loads(document_json))
+
+
+def failed_walk(job: Job, outcome: str, remedy: str) -> Walk:
+    """A walk that never began, by name."""
+    nan = math.nan
+    return Walk(
+        outcome=outcome,
+        remedy=remedy,
+        engine=job.settings.engine,
+        step_s=job.settings.step_s or nan,
+        period_s=nan,
+        travel_m=nan,
+        travel_scatter_m=nan,
+        travels_m=(),
+        drift_m=nan,
+        turn_rad=nan,
+        slip=nan,
+        duty_factor=(),
+        stance=(),
+        wave=WaveReading("none", nan, 0.0),
+        body_length_m=nan,
+        pitch_rad=nan,
+        height_mean_m=nan,
+        height_min_m=nan,
+        stability_margin_m=nan,
+        air_kg_per_m=nan,
+        simulated_s=0.0,
+    )

@@ -1,0 +1,63 @@
+"""What decides a result, as one hash: robot, engine and numerics, length of walk, the code of the models and its libraries."""
+
+from __future__ import annotations
+
+import hashlib
+import importlib.metadata
+from dataclasses import dataclass
+from functools import cache
+from pathlib import Path
+from typing import Any
+
+import gaitlab
+from gaitlab.robot.reader import canonical_document
+from gaitlab.search.settings import WalkSettings
+from gaitlab.wiring.wiring import Wiring
+
+# The packages whose code decides a walk; a change in a report or in a strategy must not throw walks away.
+DECIDING_PACKAGES = ("robot", "air", "ring", "body", "gait")
+DECIDING_LIBRARIES = ("numpy", "scipy", "pybullet")
+DECIDING_LIBRARY_OF_ENGINE = {"mujoco": "mujoco"}
+
+
+@cache
+def code_version() -> str:
+    """Hash of the sources of the models and of the versions of the libraries they stand on."""
+    digest = hashlib.sha256()
+    root = Path(gaitlab.__file__).parent
+    for package in DECIDING_PACKAGES:
+        for source in sorted((root / package).rglob("*.py")):
+            digest.update(source.relative_to(root).as_posix().encode() + b"\0" + source.read_bytes() + b"\0")
+    for library in DECIDING_LIBRARIES:
+        digest.update(f"{library} {importlib.metadata.version(library)}\0".encode())
+    return digest.hexdigest()[:16]
+
+
+def robot_hash(document: dict[str, Any]) -> str:
+    """Hash of what decides a result in a robot file; the name and notes do not."""
+    return hashlib.sha256(canonical_document(document).encode()).hexdigest()[:16]
+
+
+@dataclass(frozen=True)
+class Identity:
+    """Whose walks a ledger holds: the robot by name and hash, and the code they were walked with."""
+
+    robot_name: str
+    robot_hash: str
+    code_version: str
+
+    @classmethod
+    def of(cls, document: dict[str, Any]) -> Identity:
+        """The identity of this robot under the code that is running."""
+        return cls(str(document["name"]), robot_hash(document), code_version())
+
+    def key(self, wiring: Wiring, settings: WalkSettings) -> str:
+        """Name of one walk: the same for the same numbers, on any machine with the same code."""
+        parts = (self.robot_hash, self.code_version, _libraries(settings.engine), settings.text, settings.level)
+        return hashlib.sha256("\0".join((*parts, wiring.text())).encode()).hexdigest()
+
+
+@cache
+def _libraries(engine: str) -> str:
+    library = DECIDING_LIBRARY_OF_ENGINE.get(engine)
+    return "" if library is None else f"{library} {importlib.metadata.version(library)}"

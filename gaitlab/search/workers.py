@@ -1,0 +1,176 @@
+"""Runs evaluations on local processes or on a cluster: whatever dies costs its own walks, and those are run again."""
+
+from __future__ import annotations
+
+import multiprocessing
+import os
+import signal
+import threading
+from collections import deque
+from collections.abc import Callable, Iterable, Iterator
+from concurrent.futures import FIRST_COMPLETED, Executor, Future, ProcessPoolExecutor, wait
+from concurrent.futures.process import BrokenProcessPool
+from dataclasses import dataclass, field
+from itertools import islice
+from typing import Protocol
+
+from gaitlab.search.evaluate import WORKER_LOST, Evaluate, Evaluation, Job, failed_walk
+from gaitlab.search.guard import follow_parent
+
+IN_FLIGHT_PER_WORKER = 2  # one running and one waiting, so that no worker idles; chosen by us
+LOSSES_MAX = 3  # a walk during which a worker died this often is given up; chosen by us
+REMEDY = "walk this wiring alone with `gaitlab walk`: it ends the process (memory, or a fault of the engine); --resume tries it again"
+ONE_THREAD = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")
+
+
+class Workers(Protocol):
+    """What a search needs: finished walks in any order, and an end."""
+
+    def evaluated(self, jobs: Iterable[Job]) -> Iterator[tuple[Job, Evaluation]]:
+        """Each job with its evaluation, in the order in which they end."""
+
+    def close(self) -> None:
+        """Ends every process that was started, without waiting for what they are at."""
+
+
+@dataclass
+class InProcess:
+    """Evaluates one job after the other in this process."""
+
+    evaluate: Evaluate
+
+    def evaluated(self, jobs: Iterable[Job]) -> Iterator[tuple[Job, Evaluation]]:
+        """Each job with its evaluation, in order."""
+        for job in jobs:
+            yield job, self.evaluate(job)
+
+    def close(self) -> None:
+        """Nothing was started."""
+
+
+@dataclass
+class ExecutorWorkers:
+    """Evaluates on an executor that `start` makes; a broken one is replaced.
+
+    `lost` are the exceptions by which the executor says that the process at work died. Then every job in flight may be the
+    culprit: those are run again one at a time, so that the next loss names it, and one that costs `LOSSES_MAX` workers
+    is given up as ``worker_lost``.
+    """
+
+    evaluate: Evaluate
+    start: Callable[[], Executor]
+    in_flight: int
+    lost: tuple[type[BaseException], ...]
+    stop: Callable[[Executor], None]
+    _executor: Executor | None = None
+    _losses: dict[str, int] = field(default_factory=dict)
+
+    def evaluated(self, jobs: Iterable[Job]) -> Iterator[tuple[Job, Evaluation]]:
+        """Each job with its evaluation, in the order in which they end."""
+        waiting, suspects = iter(jobs), deque[Job]()
+        running: dict[Future[Evaluation], Job] = {}
+        while True:
+            self._fill(running, waiting, suspects)
+            if not running:
+                return
+            done, _ = wait(running, return_when=FIRST_COMPLETED)
+            for future in done:
+                job = running.pop(future)
+                try:
+                    yield job, future.result()
+                except self.lost:
+                    suspects.append(job)
+            if suspects and self._broken(done):
+                suspects.extend(running.values())
+                running.clear()
+                self._restart()
+            yield from self._given_up(suspects)
+
+    def close(self) -> None:
+        """Ends the executor without waiting for what it is at."""
+        if self._executor is not None:
+            self.stop(self._executor)
+            self._executor = None
+
+    def _fill(self, running: dict[Future[Evaluation], Job], waiting: Iterator[Job], suspects: deque[Job]) -> None:
+        """Suspects go alone; otherwise as many as keep the workers busy."""
+        if suspects:
+            if not running:
+                job = suspects.popleft()
+                running[self._submitted(job)] = job
+            return
+        for job in islice(waiting, self.in_flight - len(running)):
+            running[self._submitted(job)] = job
+
+    def _submitted(self, job: Job) -> Future[Evaluation]:
+        if self._executor is None:
+            self._executor = self.start()
+        return self._executor.submit(self.evaluate, job)
+
+    def _broken(self, done: set[Future[Evaluation]]) -> bool:
+        return any(isinstance(future.exception(), BrokenProcessPool) for future in done if not future.cancelled())
+
+    def _restart(self) -> None:
+        self.close()
+
+    def _given_up(self, suspects: deque[Job]) -> Iterator[tuple[Job, Evaluation]]:
+        for _ in range(len(suspects)):
+            job = suspects.popleft()
+            self._losses[job.key] = self._losses.get(job.key, 0) + 1
+            if self._losses[job.key] >= LOSSES_MAX:
+                yield job, Evaluation(failed_walk(job, WORKER_LOST, REMEDY), 0.0)
+            else:
+                suspects.append(job)
+
+
+def local_workers(evaluate: Evaluate, number: int) -> ExecutorWorkers:
+    """`number` processes, started afresh (spawn) so that each has its own physics client and no inherited state."""
+    return ExecutorWorkers(
+        evaluate=evaluate,
+        start=lambda: _SpawnPool(number),
+        in_flight=IN_FLIGHT_PER_WORKER * number,
+        lost=(BrokenProcessPool,),
+        stop=_stopped,
+    )
+
+
+class _SpawnPool(ProcessPoolExecutor):
+    """A process pool whose workers never see Ctrl-C, not even while they start: the search alone decides what it means."""
+
+    def __init__(self, number: int) -> None:
+        for name in ONE_THREAD:
+            os.environ.setdefault(name, "1")  # the walks run side by side: threads inside one would only fight
+        super().__init__(
+            number,
+            mp_context=multiprocessing.get_context("spawn"),
+            initializer=follow_parent,
+            initargs=(os.getpid(),),
+        )
+
+    def submit(self, fn, /, *args, **kwargs):  # type: ignore[no-untyped-def]
+        """As in the base class, with SIGINT held back: a process started meanwhile inherits that, ours gets it afterwards."""
+        with _interrupts_held():
+            return super().submit(fn, *args, **kwargs)
+
+
+class _interrupts_held:
+    """Holds SIGINT back in the main thread where the platform can."""
+
+    def __enter__(self) -> None:
+        self._can = hasattr(signal, "pthread_sigmask") and threading.current_thread() is threading.main_thread()
+        if self._can:
+            self._before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+
+    def __exit__(self, *_: object) -> None:
+        if self._can:
+            signal.pthread_sigmask(signal.SIG_SETMASK, self._before)
+
+
+def _stopped(executor: Executor) -> None:
+    """Ends a process pool at once, walks in progress included."""
+    processes = list((getattr(executor, "_processes", None) or {}).values())
+    executor.shutdown(wait=False, cancel_futures=True)
+    for process in processes:
+        process.kill()
+    for process in processes:
+        process.join()
