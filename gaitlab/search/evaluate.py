@@ -63,6 +63,7 @@ def evaluate(job: Job) -> Evaluation:
             step_s=how.step_s,
             inertia_factor=how.inertia_factor,
             periods=how.periods,
+            nudge_m=how.nudge_m,
         )
     except InputError as error:
         done = failed_walk(job, REFUSED, str(error))

@@ -13,12 +13,16 @@ SHORT_PERIODS = (
 
 @dataclass(frozen=True)
 class WalkSettings:
-    """Engine and numerics of a walk; None means as the robot file says. `periods` None walks until the travel has settled."""
+    """Engine and numerics of a walk; None means as the robot file says. `periods` None walks until the travel has settled.
+
+    `nudge_m` moves the start by that much, for rechecks.
+    """
 
     engine: str = "pybullet"
     step_s: float | None = None
     inertia_factor: float | None = None
     periods: int | None = None
+    nudge_m: float = 0.0
 
     @property
     def level(self) -> str:
