@@ -24,7 +24,7 @@ from gaitlab.air.restrictor import (
     check_vacuum,
     square_for_flow,
 )
-from gaitlab.air.section import Duct, section_of
+from gaitlab.air.section import Duct, Section, section_of
 from gaitlab.air.supply import pump_mass_flow
 from gaitlab.errors import InputError, must
 from gaitlab.robot.circuit import BenchRestrictor, RectDuct, RoundDuct, SquareDuct
@@ -63,7 +63,7 @@ class MeterReading:
         """Flow through the restrictor at the reading."""
         if not (math.isfinite(self.meter_m3_s) and self.meter_m3_s > 0):
             raise InputError(must("meter_m3_s", "finite and above 0", self.meter_m3_s, "read the meter in L/min ANR"))
-        check_vacuum("reading_Pa", self.reading_Pa, gas)
+        check_vacuum("reading", self.reading_Pa, gas)
         return DENSITY_ANR_KG_M3 * self.meter_m3_s
 
     def flow_fraction(self, gas: Gas) -> float | None:
@@ -158,7 +158,7 @@ def resistance(reading: Reading, gas: Gas, errors: dict[str, float]) -> Resistan
     total = math.sqrt(sum(share**2 for _, share in shares))
     square = _square(reading, 1.0, gas)
     spread = min(total, 0.9)
-    sonic, ratio = sonic_numbers(square, gas)
+    sonic, ratio = sonic_numbers(section_of(square), gas, gas.pressure_Pa)
     return Resistance(
         mass_flow_kg_s=flow,
         flow_fraction=reading.flow_fraction(gas),
@@ -184,13 +184,11 @@ def _share(reading: Reading, name: str, error: float, gas: Gas) -> float:
     return abs(math.log(above / below)) / (2.0 * step) * error
 
 
-def sonic_numbers(duct: Duct, gas: Gas, p_up_Pa: float | None = None) -> tuple[float, float]:
-    """Sonic conductance [m³/(s Pa) ANR] and pressure ratio at which a duct chokes, at an upstream pressure (ambient)."""
-    pressure = gas.pressure_Pa if p_up_Pa is None else p_up_Pa
-    section = section_of(duct)
-    mach = choking_mach(section, pressure, gas)
-    flow = mass_flux(mach, pressure, gas) * section.area_m2
-    reference = DENSITY_ANR_KG_M3 * pressure * math.sqrt(TEMPERATURE_ANR_K / gas.temperature_K)
+def sonic_numbers(section: Section, gas: Gas, p_up_Pa: float) -> tuple[float, float]:
+    """Sonic conductance [m³/(s Pa) ANR] and pressure ratio at which a duct chokes, at an upstream pressure."""
+    mach = choking_mach(section, p_up_Pa, gas)
+    flow = mass_flux(mach, p_up_Pa, gas) * section.area_m2
+    reference = DENSITY_ANR_KG_M3 * p_up_Pa * math.sqrt(TEMPERATURE_ANR_K / gas.temperature_K)
     return flow / reference, exit_ratio(mach, 1.0)
 
 

@@ -13,6 +13,7 @@ from gaitlab.air.section import section_of
 from gaitlab.air.supply import pump_mass_flow
 from gaitlab.errors import InputError, must
 from gaitlab.robot.circuit import BenchRestrictor, SquareDuct
+from gaitlab.robot.fields import KILO
 
 EQUIVALENT_LENGTH_M = 0.010  # printed test channels are commonly 10 mm long (common practice, no source)
 SIDE_RANGE_M = (2e-6, 20e-3)  # chosen by us: far beyond what is printed or cast on either side
@@ -24,22 +25,21 @@ def bench_mass_flow(reading: BenchRestrictor, gas: Gas) -> float:
     return pump_mass_flow(reading.reading_Pa, reading.dead_end_Pa, reading.free_flow_m3_s, reading.law, gas)[0]
 
 
-def check_vacuum(name: str, value: float, gas: Gas) -> None:
-    """Raise InputError unless `value` is a gauge vacuum between 0 and the ambient pressure."""
-    if not (math.isfinite(value) and 0 < value < gas.pressure_Pa):
-        rule = f"a gauge vacuum between 0 and the ambient {gas.pressure_Pa:g} Pa"
-        raise InputError(must(name, rule, value, "give the vacuum as a positive number below ambient pressure"))
+def check_vacuum(name: str, value_Pa: float, gas: Gas) -> None:
+    """Raise InputError, in kPa as the user wrote it, unless `value_Pa` is a gauge vacuum below the ambient pressure."""
+    if not (math.isfinite(value_Pa) and 0 < value_Pa < gas.pressure_Pa):
+        rule = f"a gauge vacuum above 0 and below the ambient {gas.pressure_Pa / KILO:g} kPa"
+        raise InputError(must(f"{name}_kPa", rule, value_Pa / KILO, "give the vacuum as a positive number"))
 
 
 def check_reading(dead_end_Pa: float, reading_Pa: float, gas: Gas) -> None:
     """Raise InputError unless 0 < reading < dead end < ambient pressure (gauge vacuums)."""
-    check_vacuum("dead_end_Pa", dead_end_Pa, gas)
-    check_vacuum("reading_Pa", reading_Pa, gas)
+    check_vacuum("dead_end", dead_end_Pa, gas)
+    check_vacuum("reading", reading_Pa, gas)
     if reading_Pa >= dead_end_Pa:
-        rule = f"below the dead-end vacuum of {dead_end_Pa:g} Pa"
-        raise InputError(
-            must("reading_Pa", rule, reading_Pa, "read the dead end with the leg plugged, then open the leg")
-        )
+        rule = f"below the dead-end vacuum of {dead_end_Pa / KILO:g} kPa"
+        fix = "read the dead end with the leg plugged, then open the leg"
+        raise InputError(must("reading_kPa", rule, reading_Pa / KILO, fix))
 
 
 @lru_cache(maxsize=256)

@@ -16,7 +16,11 @@ from gaitlab.errors import GaitlabError
 # One module per command, gaitlab/cli/<name>_command.py, imported only when its command is asked for.
 COMMANDS = {
     "check": "Read a robot file and say what it will be.",
+    "search": "Find the wiring that walks best.",
+    "duct": "Flow through one channel or tube.",
+    "divider": "A gauge reading on the bench becomes a resistance.",
     "new": "Write a commented starter robot file.",
+    "walk": "Walk one wiring and measure it.",
     "sheet": "One A4 page for the bench from a saved run.",
 }
 

@@ -44,31 +44,26 @@ def duct_plot(curve: DuctCurve) -> Figure:
         ax.plot(down, [m * MG for m in curve.flow_kg_s], color=BLUE, lw=2.2, label="flow with friction and choking")
         ax.set_xlim(0.0, curve.up_Pa / KPA)
         ax.set_ylim(0.0, ROOM_ABOVE * MG * max(curve.flow_kg_s))
-        _choked_range(ax, curve)
+        ax.axvspan(0.0, curve.choking_Pa / KPA, color=RULE, alpha=0.55, lw=0, label="choked")
         _point(ax, curve)
         ax.set_xlabel(f"pressure behind the channel (kPa absolute), {curve.up_Pa / KPA:.5g} kPa before it")
         ax.set_ylabel("mass flow (mg/s)")
         ax.set_title(curve.title)
-        ax.legend(loc="lower left")
+        figure.legend(loc="outside lower center", ncols=3)
         bare(ax, grid="both")
     return figure
 
 
-def _choked_range(ax: Axes, curve: DuctCurve) -> None:
-    edge = curve.choking_Pa / KPA
-    ax.axvspan(0.0, edge, color=RULE, alpha=0.55, lw=0)
-    ax.text(0.5 * edge, 0.04, "choked", transform=ax.get_xaxis_transform(), ha="center", va="bottom", color=MUTED)
-
-
 def _point(ax: Axes, curve: DuctCurve) -> None:
+    """The asked-for point, its label below the falling curve, where nothing else is drawn."""
     at, flow = curve.point_down_Pa / KPA, curve.point_flow_kg_s * MG
-    ax.plot(at, flow, ls="", marker="o", ms=7, mfc="white", mec=ORANGE, mew=2)
-    left = at > 0.6 * curve.up_Pa / KPA
+    ax.plot(at, flow, ls="", marker="o", ms=7, mfc="white", mec=ORANGE, mew=2, clip_on=False)
+    left = at > 0.4 * curve.up_Pa / KPA
     ax.annotate(
         f"{flow:.4g} mg/s at {at:.4g} kPa",
         (at, flow),
         textcoords="offset points",
-        xytext=(-8 if left else 8, 10),
+        xytext=(-9 if left else 9, -13),
         ha="right" if left else "left",
         color=INK,
     )
