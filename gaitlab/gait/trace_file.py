@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import dataclasses
+import io
 import json
 import zipfile
 from pathlib import Path
@@ -17,11 +18,8 @@ VERSION = 1
 _ARRAYS = ("time_s", "position_m", "quaternion", "vacuum_Pa", "loaded", "foot_m")
 
 
-def write_trace(path: Path, trace: Trace) -> None:
-    """Write the trace as .npz (float32 for what is only drawn, so that a file stays small).
-
-    Raises RunFolderError where the file cannot be written.
-    """
+def trace_bytes(trace: Trace) -> bytes:
+    """The trace as the content of an .npz file (float32 for what is only drawn, so that a file stays small)."""
     about = {
         "version": VERSION,
         "parts": [dataclasses.asdict(part) for part in trace.parts],
@@ -30,9 +28,15 @@ def write_trace(path: Path, trace: Trace) -> None:
         "period_s": trace.period_s,
     }
     arrays: dict[str, Any] = {name: _small(getattr(trace, name)) for name in _ARRAYS}
+    buffer = io.BytesIO()
+    np.savez_compressed(buffer, about=np.array(json.dumps(about)), **arrays)
+    return buffer.getvalue()
+
+
+def write_trace(path: Path, trace: Trace) -> None:
+    """Write the trace to a file. Raises RunFolderError where it cannot be written."""
     try:
-        with Path(path).open("wb") as file:
-            np.savez_compressed(file, about=np.array(json.dumps(about)), **arrays)
+        Path(path).write_bytes(trace_bytes(trace))
     except OSError as error:
         raise RunFolderError(f"trace {Path(path).name} cannot be written: {error.strerror or error}") from error
 
