@@ -21,6 +21,8 @@ COMMANDS = {
     "divider": "A gauge reading on the bench becomes a resistance.",
     "new": "Write a commented starter robot file.",
     "walk": "Walk one wiring and measure it.",
+    "compare": "Wirings side by side, each with its reversed wave.",
+    "spread": "What wirings do over the build tolerances.",
     "sheet": "One A4 page for the bench from a saved run.",
 }
 

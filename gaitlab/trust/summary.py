@@ -35,12 +35,16 @@ class Chance:
 
 @dataclass(frozen=True)
 class Outcome:
-    """What one build did with one wiring: travel per period [m], speed [m/s] (nan unless it walked), and its name."""
+    """What one build did with one wiring: travel per period [m], speed [m/s], the searched-for score (more is better), its name.
+
+    nan unless it walked.
+    """
 
     outcome: str
     ring_started: bool
     travel_m: float
     speed_m_s: float
+    score: float
 
     @property
     def walked(self) -> bool:
@@ -81,9 +85,9 @@ def chance(count: float, total: int) -> Chance:
     return Chance(share, min(max(centre - half, 0.0), share), max(min(centre + half, 1.0), share))
 
 
-def best_shares(travel_m: FloatArray) -> FloatArray:
-    """How many draws each wiring wins, (W,): `travel_m` (n, W), nan never wins, equal winners share the draw."""
-    scores = np.where(np.isfinite(travel_m), travel_m, -np.inf)
+def best_shares(scores: FloatArray) -> FloatArray:
+    """How many draws each wiring wins, (W,): `scores` (n, W), nan never wins, equal winners share the draw."""
+    scores = np.where(np.isfinite(scores), scores, -np.inf)
     top = scores.max(axis=1, keepdims=True)
     winners = (scores == top) & np.isfinite(top)
     return np.asarray((winners / np.maximum(winners.sum(axis=1, keepdims=True), 1)).sum(axis=0))
@@ -91,8 +95,7 @@ def best_shares(travel_m: FloatArray) -> FloatArray:
 
 def summaries(outcomes: Sequence[Sequence[Outcome]]) -> tuple[WiringSummary, ...]:
     """One summary per wiring from `outcomes[draw][wiring]`; the order of the wirings changes nothing but the order."""
-    travel_m = np.array([[o.travel_m for o in row] for row in outcomes])
-    best = best_shares(travel_m)
+    best = best_shares(np.array([[o.score for o in row] for row in outcomes]))
     columns = zip(*outcomes, strict=True)
     return tuple(_summary(list(column), float(b)) for column, b in zip(columns, best, strict=True))
 

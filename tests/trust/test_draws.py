@@ -19,7 +19,10 @@ ROW5 = Path(__file__).parents[2] / "robots" / "tray_row5.toml"
 
 @pytest.fixture(scope="module")
 def row5():
-    return read_robot(ROW5).document
+    document = read_robot(ROW5).document
+    document["ring"]["resistor"] = {"square_mm": 0.5, "length_mm": 10}
+    document["foot"]["pad"]["friction"] = 0.6
+    return document
 
 
 def test_uniform_reaches_its_limits_and_no_further():

@@ -12,11 +12,11 @@ from gaitlab.trust.summary import Outcome, Quantiles, best_shares, chance, quant
 
 
 def _walked(travel_m: float) -> Outcome:
-    return Outcome("walked", True, travel_m, 2 * travel_m)
+    return Outcome("walked", True, travel_m, 2 * travel_m, travel_m)
 
 
-FELL = Outcome("fell_over", True, math.nan, math.nan)
-STUCK = Outcome("too_weak", False, math.nan, math.nan)
+FELL = Outcome("fell_over", True, math.nan, math.nan, math.nan)
+STUCK = Outcome("too_weak", False, math.nan, math.nan, math.nan)
 
 
 def _model(points: np.ndarray) -> np.ndarray:

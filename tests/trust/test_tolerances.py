@@ -16,7 +16,9 @@ ROW5 = Path(__file__).parents[2] / "robots" / "tray_row5.toml"
 
 @pytest.fixture
 def row5():
-    return read_robot(ROW5).document
+    document = read_robot(ROW5).document
+    document["ring"]["resistor"] = {"square_mm": 0.5, "length_mm": 10}
+    return document
 
 
 def test_splitting_by_stage_changes_no_part(row5):
