@@ -7,50 +7,52 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 
+from gaitlab.air.lookup import RowTable, hermite_rows
 from gaitlab.body.bellows import BellowsLaw
-from gaitlab.ring.network import IntArray
 from gaitlab.ring.waves import FloatArray
 
-KNOTS = 512  # of a table from vacuum to 1.2 atmospheres; the error of a cubic is then below 1e-9 (measured in the tests)
+KNOTS = (
+    512  # of a table from vacuum to 1.2 atmospheres; the error of a cubic is then below 1e-9 (measured in the tests)
+)
+NEWTON_STEPS = 4  # from a start that is right to 1e-4
 LOWEST, HIGHEST = 1e-3, 1.2  # ends of a table in ambient pressures: nothing in a ring leaves them
 
 
-@dataclass(frozen=True)
 class Chambers:
-    """Pressure of n bellows from their gas content: cubic Hermite tables with even steps of content.
+    """Pressure of n bellows from their gas content, by cubic tables with even steps of content, one for each type."""
 
-    `row` (n,) is the type of each bellows; `pressure_Pa` and `rise_Pa` (types, KNOTS) hold p and dp/dE times the step.
-    """
-
-    row: IntArray
-    step_J: FloatArray
-    lowest_J: FloatArray
-    pressure_Pa: FloatArray
-    rise_Pa: FloatArray
+    def __init__(self, tables: Sequence[_Table]) -> None:
+        count = len(tables)
+        self._lowest = np.array([table.lowest_J for table in tables])
+        self._per_step = np.array([1.0 / table.step_J for table in tables])
+        self._rows = RowTable(np.reshape([table.rows for table in tables], (count, -1, 8))) if tables else None
 
     @classmethod
     def of(cls, laws: Sequence[BellowsLaw], ambient_Pa: float) -> Chambers:
-        """Tables for these bellows, one for each distinct law."""
-        distinct = list(dict.fromkeys(laws))
-        tables = [_table(law, ambient_Pa) for law in distinct]
-        row = np.array([distinct.index(law) for law in laws], dtype=np.int64)
-        lowest, step = (np.array([t[i] for t in tables])[row] if tables else np.empty(0) for i in (0, 1))
-        pressure, rise = (np.array([t[i] for t in tables]).reshape(len(tables), KNOTS) for i in (2, 3))
-        return cls(row, step, lowest, pressure.ravel(), rise.ravel())
+        """The chambers of these bellows, in their order."""
+        return cls([_table(law, ambient_Pa) for law in laws])
 
     def pressure(self, content_J: FloatArray) -> tuple[FloatArray, FloatArray]:
-        """Pressure [Pa absolute] and its derivative with content [1/m³], each (n,) or (…, n)."""
-        place = (content_J - self.lowest_J) / self.step_J
-        knot = np.clip(place.astype(np.int64), 0, KNOTS - 2)
-        t = place - knot
-        at = knot + self.row * KNOTS
-        p0, p1, r0, r1 = self.pressure_Pa[at], self.pressure_Pa[at + 1], self.rise_Pa[at], self.rise_Pa[at + 1]
-        rise = p1 - p0
-        square, cube = 3.0 * rise - 2.0 * r0 - r1, r0 + r1 - 2.0 * rise
-        return p0 + t * (r0 + t * (square + t * cube)), (r0 + t * (2.0 * square + 3.0 * t * cube)) / self.step_J
+        """Pressure [Pa absolute] and its derivative with content [1/m³], each (n,)."""
+        if self._rows is None:
+            return content_J, content_J
+        self._rows.look_up(np.maximum((content_J - self._lowest) * self._per_step, 0.0))
+        return self._rows.value, self._rows.slope.copy()
+
+    def pressures(self, content_J: FloatArray) -> FloatArray:
+        """Pressures (K, n) at contents (K, n)."""
+        return np.array([self.pressure(row)[0].copy() for row in content_J]).reshape(content_J.shape)
+
+
+@dataclass(frozen=True)
+class _Table:
+    lowest_J: float
+    step_J: float
+    rows: FloatArray
 
 
 def content(law: BellowsLaw, pressure_Pa: FloatArray, ambient_Pa: float) -> tuple[FloatArray, FloatArray]:
@@ -59,14 +61,16 @@ def content(law: BellowsLaw, pressure_Pa: FloatArray, ambient_Pa: float) -> tupl
     return pressure_Pa * volume, volume - pressure_Pa * slope
 
 
-def _table(law: BellowsLaw, ambient_Pa: float) -> tuple[float, float, FloatArray, FloatArray]:
-    """Lowest content, step, pressures and slopes times step at even contents, by Newton from an interpolated start."""
+@lru_cache(maxsize=256)
+def _table(law: BellowsLaw, ambient_Pa: float) -> _Table:
+    """Pressure and slope at even contents, found by Newton from an interpolated start."""
     coarse = np.linspace(LOWEST, HIGHEST, 4 * KNOTS) * ambient_Pa
     held = content(law, coarse, ambient_Pa)[0]
     even = np.linspace(held[0], held[-1], KNOTS)
     pressure = np.interp(even, held, coarse)
-    for _ in range(4):
+    for _ in range(NEWTON_STEPS):
         now, slope = content(law, pressure, ambient_Pa)
         pressure = pressure - (now - even) / slope
     step = float(even[1] - even[0])
-    return float(even[0]), step, pressure, step / content(law, pressure, ambient_Pa)[1]
+    rows = hermite_rows(pressure, 1.0 / content(law, pressure, ambient_Pa)[1], step)
+    return _Table(float(even[0]), step, rows)

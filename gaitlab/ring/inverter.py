@@ -72,7 +72,9 @@ def inverter_curve(resistor: FlowPart, valve: Valve, supply_Pa: float, gas: Gas)
     opening, output = held_outputs(resistor, valve, supply_Pa, gas)
     balance = _balance(valve, opening, output, gas)
     control = np.arange(0.0, supply_Pa + CONTROL_STEP_PA, CONTROL_STEP_PA)
-    rising, falling = (np.array([_output_at(c, opening, output, balance, first) for c in control]) for first in (True, False))
+    rising, falling = (
+        np.array([_output_at(c, opening, output, balance, first) for c in control]) for first in (True, False)
+    )
     low, high = float(rising[-1]), float(rising[0])
     middle = 0.5 * (low + high)
     return InverterCurve(

@@ -13,6 +13,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Protocol
 
 import numpy as np
@@ -45,6 +46,9 @@ class ChamberLaw(Protocol):
 
     def pressure(self, content_J: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Pressure [Pa absolute] at the gas content p V [J], and its derivative [1/m³], each (n,)."""
+
+    def pressures(self, content_J: FloatArray) -> FloatArray:
+        """Pressures (K, n) at contents (K, n)."""
 
 
 class SupplyLaw(Protocol):
@@ -84,6 +88,11 @@ class Network:
         """n."""
         return int(self.fed_by.size)
 
+    @cached_property
+    def places(self) -> Places:
+        """Where everything is in a state, and which element joins what."""
+        return Places.of(self)
+
     def split(self, state: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray, FloatArray]:
         """P, X, E, G and manifold volume of a state (or of many: the last axis is the state's)."""
         n, m = self.stages, 2 * self.stages + self.bellows
@@ -95,133 +104,176 @@ class Network:
 
     def linearised(self, state: FloatArray) -> Linearised:
         """dy/dt and the blocks of its Jacobian."""
-        return Linearised(self, state)
+        return Linearised(self, _Point(self, state))
+
+
+@dataclass(frozen=True)
+class Places:
+    """Index arrays of a network: N stages, n bellows, N + N + n elements, 2N + n + 2 unknowns.
+
+    `side_a` and `side_b` pick an element's two pressures out of (P, bellows, manifold, atmosphere); `incidence` (unknowns,
+    elements) turns mass flows into rates of P, E and G.
+    """
+
+    n: int
+    m: int
+    stage: IntArray
+    before: IntArray
+    bellows: IntArray
+    side_a: IntArray
+    side_b: IntArray
+    incidence: FloatArray
+
+    @classmethod
+    def of(cls, net: Network) -> Places:
+        """The places of this network."""
+        n, count = net.stages, net.bellows
+        m = 2 * n + count
+        stage, bellows = np.arange(n), 2 * n + np.arange(count)
+        manifold, atmosphere = np.full(n, n + count), np.full(n, n + count + 1)
+        side_a = np.concatenate((stage, atmosphere, net.fed_by))
+        side_b = np.concatenate((manifold, stage, n + np.arange(count)))
+        incidence = np.zeros((m + 2, m))
+        per = net.gas_J_kg / net.volume_m3
+        incidence[stage, stage], incidence[stage, n + stage] = -per, per
+        incidence[net.fed_by, bellows] = -per[net.fed_by]
+        incidence[bellows, bellows] = incidence[m, :n] = net.gas_J_kg
+        return cls(n, m, stage, np.roll(stage, 1), bellows, side_a, side_b, incidence)
 
 
 class _Point:
     """Everything evaluated at one state; what the Jacobian needs again is kept."""
 
-    def __init__(self, net: Network, state: FloatArray) -> None:
-        n = net.stages
-        self.output, self.opening, content, manifold, volume = net.split(state)
-        self.volume = float(volume)
-        self.manifold = float(manifold) / self.volume
-        self.bellows, self.bellows_slope = net.chambers.pressure(content)
-        p_a = np.empty(2 * n + net.bellows)
-        p_b = np.empty_like(p_a)
-        p_a[:n], p_a[n : 2 * n], p_a[2 * n :] = self.output, net.ambient_Pa, self.output[net.fed_by]
-        p_b[:n], p_b[n : 2 * n], p_b[2 * n :] = self.manifold, self.output, self.bellows
-        self.flow, self.flow_a, self.flow_b = net.flows.flow(p_a, p_b)
-        self.control = np.concatenate((self.output[-1:], self.output[:-1]))
-        self.target = net.openings.target(self.control, self.output, self.opening)
-        self.pump, self.pump_slope = net.supply.mass_flow(self.manifold)
-        self.resistor_part = 1.0 - net.complement * self.opening
-        self.rates = self._rates(net, state.size)
+    __slots__ = (
+        "bellows_slope",
+        "flow",
+        "flow_a",
+        "flow_b",
+        "manifold",
+        "opening",
+        "part",
+        "pump_slope",
+        "rates",
+        "target",
+        "volume",
+    )
 
-    def _rates(self, net: Network, size: int) -> FloatArray:
-        n, m = net.stages, 2 * net.stages + net.bellows
-        drawn, tubes = self.resistor_part * self.flow[:n], self.flow[2 * n :]
-        rates = np.empty(size)
-        into = self.opening * self.flow[n : 2 * n] - drawn
-        if m > 2 * n:
-            into -= np.bincount(net.fed_by, tubes, n)
-        rates[:n] = net.gas_J_kg / net.volume_m3 * into
+    def __init__(self, net: Network, state: FloatArray) -> None:
+        at = net.places
+        n, m = at.n, at.m
+        self.opening = state[n : 2 * n]
+        self.volume = float(state[m + 1])
+        self.manifold = float(state[m]) / self.volume
+        pressure = np.empty(m - n + 2)
+        pressure[:n] = output = state[:n]
+        pressure[n : m - n], self.bellows_slope = net.chambers.pressure(state[2 * n : m])
+        pressure[m - n], pressure[m - n + 1] = self.manifold, net.ambient_Pa
+        self.flow, self.flow_a, self.flow_b = net.flows.flow(pressure[at.side_a], pressure[at.side_b])
+        self.target = net.openings.target(output[at.before], output, self.opening)
+        self.part = np.ones(m)
+        self.part[n : 2 * n] = self.opening
+        if net.complement:
+            self.part[:n] -= net.complement * self.opening
+        pump, self.pump_slope = net.supply.mass_flow(self.manifold)
+        rates = at.incidence @ (self.part * self.flow)
         rates[n : 2 * n] = (self.target[0] - self.opening) / net.travel_s
-        rates[2 * n : m] = net.gas_J_kg * tubes
-        rates[m] = net.gas_J_kg * (drawn.sum() - self.pump)
+        rates[m] -= net.gas_J_kg * pump
         rates[m + 1] = net.swept_m3_s
-        return rates
+        self.rates = rates
 
 
 class Linearised:
     """Rates and Jacobian at one state; membranes and bellows touch only their own output and are eliminated by hand.
 
     What remains is one equation for each output, coupled to the output before it and to the manifold: N + 1 unknowns.
+    Names say row and column: `px` is the derivative of dP/dt with X, c the controlling output, m the manifold's pressure.
     """
 
-    def __init__(self, net: Network, state: FloatArray) -> None:
-        n, gas = net.stages, net.gas_J_kg
-        at = _Point(net, state)
+    def __init__(self, net: Network, at: _Point) -> None:
+        n, gas, fed = net.stages, net.gas_J_kg, net.fed_by
         self.net, self.rates = net, at.rates
         per = gas / net.volume_m3
-        r_a, r_b = at.resistor_part * at.flow_a[:n], at.resistor_part * at.flow_b[:n]
-        t_a, t_b = at.flow_a[2 * n :], at.flow_b[2 * n :] * at.bellows_slope
-        _, control, output, opening = at.target
-        manifold_slope = 1.0 / at.volume
-        self.pp = per * (at.opening * at.flow_b[n : 2 * n] - r_a - np.bincount(net.fed_by, t_a, n))
+        by_a, by_b = at.part * at.flow_a, at.part * at.flow_b
+        tube_b = by_b[2 * n :] * at.bellows_slope
         drawn = net.complement * at.flow[:n]
+        self.pp = per * (by_b[n : 2 * n] - by_a[:n] - np.bincount(fed, by_a[2 * n :], n))
         self.px = per * (at.flow[n : 2 * n] + drawn)
-        self.pe, self.pm = -per[net.fed_by] * t_b, -per * r_b
-        self.xc, self.xp, self.xx = control / net.travel_s, output / net.travel_s, (opening - 1.0) / net.travel_s
-        self.ep, self.ee = gas * t_a, gas * t_b
-        self.mp, self.mx, self.mm = gas * r_a, -gas * drawn, gas * (r_b.sum() - at.pump_slope)
-        self.m_content, self.m_volume = manifold_slope, -at.manifold * manifold_slope
+        self.pe, self.pm = -per[fed] * tube_b, -per * by_b[:n]
+        self.xc, self.xp = at.target[1] / net.travel_s, at.target[2] / net.travel_s
+        self.xx = (at.target[3] - 1.0) / net.travel_s
+        self.ep, self.ee = gas * by_a[2 * n :], gas * tube_b
+        self.mp, self.mx = gas * by_a[:n], -gas * drawn
+        self.mm = gas * (float(by_b[:n].sum()) - at.pump_slope)
+        self.m_content, self.m_volume = 1.0 / at.volume, -at.manifold / at.volume
 
     def solver(self, shift: float) -> Callable[[FloatArray], FloatArray]:
-        """The map r → (shift·1 − J)⁻¹ r: by elimination of membranes and bellows, then LU of N + 1 equations."""
-        net = self.net
-        n, m = net.stages, 2 * net.stages + net.bellows
-        fed, x, e = net.fed_by, 1.0 / (shift - self.xx), 1.0 / (shift - self.ee)
+        """The map r → (shift·1 − J)⁻¹ r.
+
+        With D for what is solved by itself, `gather` brings r to the N + 1 reduced equations, LU solves them, and
+        `spread` carries their solution back to membranes and bellows.
+        """
+        x, e = 1.0 / (shift - self.xx), 1.0 / (shift - self.ee)
         px, pe, mx = self.px * x, self.pe * e, self.mx * x
         lu, pivots = self._factorised(shift, px, pe, mx)
-        x_p, x_c, e_p = x * self.xp, x * self.xc, e * self.ep
-        still = net.swept_m3_s == 0.0
+        own, gather = self._gathering(shift, x, e, (px, pe, mx))
+        spread = self._spreading(x, e)
 
         def solved(right: FloatArray) -> FloatArray:
-            out = np.empty_like(right)
-            own_x, own_e = right[n : 2 * n], right[2 * n : m]
-            reduced = np.empty(n + 1)
-            reduced[:n] = right[:n] + px * own_x
-            if m > 2 * n:
-                reduced[:n] += np.bincount(fed, pe * own_e, n)
-            reduced[n] = right[m] + mx @ own_x
-            out[m + 1] = right[m + 1] / shift
-            if not still:
-                by_volume = self.m_volume * out[m + 1]
-                reduced[:n] += self.pm * by_volume
-                reduced[n] += self.mm * by_volume
-            found = dgetrs(lu, pivots, reduced, trans=1)[0]
-            p = found[:n]
-            out[:n], out[m] = p, found[n]
-            out[n : 2 * n] = x * own_x + x_p * p
-            out[n] += x_c[0] * p[-1]
-            out[n + 1 : 2 * n] += x_c[1:] * p[:-1]
-            out[2 * n : m] = e * own_e + e_p * p[fed]
-            return out
+            found = dgetrs(lu, pivots, gather @ right, trans=1)[0]
+            return np.asarray(own * right + spread @ found)
 
         return solved
 
+    def _gathering(
+        self, shift: float, x: FloatArray, e: FloatArray, inner: tuple[FloatArray, FloatArray, FloatArray]
+    ) -> tuple[FloatArray, FloatArray]:
+        """Diagonal of what is solved by itself (unknowns,), and the map of a right side to the reduced one."""
+        at, (px, pe, mx) = self.net.places, inner
+        n, m = at.n, at.m
+        own, gather = np.zeros(m + 2), np.zeros((n + 1, m + 2))
+        own[n : 2 * n], own[2 * n : m], own[m + 1] = x, e, 1.0 / shift
+        gather[at.stage, at.stage] = 1.0
+        gather[at.stage, n + at.stage] = px
+        gather[self.net.fed_by, at.bellows] = pe
+        gather[n, m], gather[n, n : 2 * n] = 1.0, mx
+        by_volume = self.m_volume / shift
+        gather[:n, m + 1], gather[n, m + 1] = self.pm * by_volume, self.mm * by_volume
+        return own, gather
+
+    def _spreading(self, x: FloatArray, e: FloatArray) -> FloatArray:
+        """The map of the reduced solution (outputs, manifold content) to all unknowns."""
+        at = self.net.places
+        spread = np.zeros((at.m + 2, at.n + 1))
+        spread[at.stage, at.stage] = 1.0
+        spread[at.n + at.stage, at.stage] = x * self.xp
+        spread[at.n + at.stage, at.before] += x * self.xc
+        spread[at.bellows, self.net.fed_by] = e * self.ep
+        spread[at.m, at.n] = 1.0
+        return spread
+
     def _factorised(self, shift: float, px: FloatArray, pe: FloatArray, mx: FloatArray) -> tuple[FloatArray, IntArray]:
         """LU of the transposed reduced matrix (row-major numpy is LAPACK's column-major transpose)."""
-        net, n = self.net, self.net.stages
+        at, n = self.net.places, self.net.stages
         matrix = np.zeros((n + 1, n + 1))
-        flat = matrix.reshape(-1)
-        flat[: n * (n + 1) : n + 2] = shift - self.pp - px * self.xp - np.bincount(net.fed_by, pe * self.ep, n)
-        back = px * self.xc
-        flat[n + 1 : n * (n + 1) : n + 2] -= back[1:]
-        matrix[0, n - 1] -= back[0]
+        matrix[at.stage, at.stage] = shift - self.pp - px * self.xp - np.bincount(self.net.fed_by, pe * self.ep, n)
+        matrix[at.stage, at.before] -= px * self.xc
         matrix[:n, n] = -self.pm * self.m_content
-        past = mx * self.xc
         matrix[n, :n] = -self.mp - mx * self.xp
-        matrix[n, : n - 1] -= past[1:]
-        matrix[n, n - 1] -= past[0]
+        matrix[n, at.before] -= mx * self.xc
         matrix[n, n] = shift - self.mm * self.m_content
         lu, pivots, _ = dgetrf(matrix.T, overwrite_a=1)
         return lu, pivots
 
     def matrix(self) -> FloatArray:
         """The full Jacobian (dense), for the stability of a resting state and for checks of the elimination."""
-        net = self.net
-        n, m = net.stages, 2 * net.stages + net.bellows
-        full, i, e = np.zeros((m + 2, m + 2)), np.arange(n), 2 * n + np.arange(net.bellows)
-        full[i, i] = self.pp
-        full[i, n + i] = self.px
-        full[net.fed_by, e] = self.pe
-        full[n + i, (i - 1) % n] = self.xc
+        at, fed = self.net.places, self.net.fed_by
+        n, m, i, e = at.n, at.m, at.stage, at.bellows
+        full = np.zeros((m + 2, m + 2))
+        full[i, i], full[i, n + i], full[fed, e] = self.pp, self.px, self.pe
+        full[n + i, at.before] = self.xc
         full[n + i, i] += self.xp
         full[n + i, n + i] = self.xx
-        full[e, net.fed_by] = self.ep
-        full[e, e] = self.ee
+        full[e, fed], full[e, e] = self.ep, self.ee
         full[m, :n], full[m, n : 2 * n] = self.mp, self.mx
         for row, by_manifold in ((i, self.pm), (m, self.mm)):
             full[row, m], full[row, m + 1] = by_manifold * self.m_content, by_manifold * self.m_volume

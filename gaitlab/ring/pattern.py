@@ -84,9 +84,7 @@ def counted_pattern(robot: Robot, wiring: Wiring) -> tuple[LoadPattern, tuple[tu
     parts = stage_parts(robot.ring)
     inlets = tuple(_ordered(wiring, k + 1, loads) for k in range(len(parts)))
     held = _ordered(wiring, HELD, loads)
-    stages = tuple(
-        replace(part, loads=tuple(loads[i] for i in on)) for part, on in zip(parts, inlets, strict=True)
-    )
+    stages = tuple(replace(part, loads=tuple(loads[i] for i in on)) for part, on in zip(parts, inlets, strict=True))
     pattern = LoadPattern(
         ambient=robot.ambient,
         supply=robot.supply,

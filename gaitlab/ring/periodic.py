@@ -16,6 +16,7 @@ from gaitlab.ring.waves import FloatArray
 
 RENEWALS_MAX = 6  # times that a run without cuts is given a new level and double the time
 BISECTIONS = 40  # of a step: finds a cut to 1e-12 of it
+OFF_MIDDLE = 0.2  # of a swing that the level may be off its middle: moving it makes cuts hard to compare
 STILL = 1e-6  # full swings per characteristic time that count as standing still
 KICKS_MAX, KICK = 3, 1e-2  # how often, and by how many full swings, a ring balanced on a ridge is moved off it
 
@@ -32,7 +33,7 @@ class Settings:
     loose: float = 2e-3
     tight: float = 2e-4
     near: float = 1e-2
-    closed: float = 5e-5
+    closed: float = 1e-4
     cuts_max: int = 60
 
 
@@ -127,12 +128,16 @@ class _Run:
                     self.kind, self.state = "wandering", step.after
 
     def closed(self) -> Settled:
-        """Tight periods from the last cut until one closes; the level stays, so cuts are the same section."""
+        """Tight periods from the last cut until one closes, the level left alone.
+
+        Where gaps shrink by a factor ρ a period, gap ρ/(1 − ρ) is left; that or the gap itself must be below `closed`.
+        """
+        gap = 0.0
         for _ in range(self.settings.cuts_max):
             start_s, start = self.time, self.state
             kept = self._one_period()
-            gap = self._apart(start)
-            if gap < self.settings.closed:
+            before, gap = gap, self._apart(start)
+            if gap < self.settings.closed * max(1.0, (before - gap) / gap):
                 cycle = Cycle(start_s, self.time - start_s, tuple(kept), gap)
                 return Settled("periodic", tuple(self.cuts_s), self.state, cycle)
         return Settled("wandering", tuple(self.cuts_s), self.state)
@@ -175,8 +180,13 @@ class _Run:
         self.cuts_s.append(self.time)
 
     def _apart(self, earlier: FloatArray) -> float:
-        """Largest change of any unknown since an earlier cut, in full swings."""
-        return float(np.max(np.abs(self.state - earlier) / self.scale))
+        """Largest change of any pressure or gas content since an earlier cut, in full swings.
+
+        Membranes are left out: they follow the pressures, and one on its way would turn 0.1 ms into a hundredth.
+        """
+        n = self.circuit.network.stages
+        moved = np.abs(self.state - earlier) / self.scale
+        return float(max(moved[:n].max(), moved[2 * n :].max()))
 
     def _passed(self, step: Step, theta: float) -> None:
         """A cut on the way: near enough to the one before, or one more."""
@@ -190,8 +200,10 @@ class _Run:
             self._renew_level()
 
     def _renew_level(self) -> None:
-        """Take the middle of the swing since the last cut as the new level."""
-        self.level = 0.5 * (self.low + self.high)
+        """Take the middle of the swing since the last cut as the new level, if the old one is far off it."""
+        middle, swing = 0.5 * (self.low + self.high), self.high - self.low
+        if abs(self.level - middle) > OFF_MIDDLE * swing:
+            self.level = middle
         self.low = self.high = self.level
 
     def _still(self, step: Step) -> bool:

@@ -75,7 +75,7 @@ def vacuums(circuit: Circuit, states: FloatArray) -> tuple[FloatArray, FloatArra
     """Gauge vacuum of outputs (N, K), bellows (n, K) and supply (K,) from states (K, unknowns)."""
     ambient = circuit.gas.pressure_Pa
     output, _, content, manifold, volume = circuit.network.split(states)
-    bellows = circuit.network.chambers.pressure(content)[0]
+    bellows = circuit.network.chambers.pressures(content)
     return ambient - output.T, ambient - bellows.T, ambient - manifold / volume
 
 

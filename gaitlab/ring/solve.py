@@ -64,7 +64,9 @@ def placed(run: RingRun, placement: Placement, robot: Robot, wiring: Wiring) -> 
     turn, stages = placement.turn, len(run.phase)
     first = (-turn) % stages
     shift = float(run.phase[first]) if np.isfinite(run.period_s) else 0.0
-    output, supply, bellows = (_shifted(w, shift) for w in (run.output_vacuum_Pa, run.supply_vacuum_Pa, run.waves.vacuum_Pa))
+    output, supply, bellows = (
+        _shifted(w, shift) for w in (run.output_vacuum_Pa, run.supply_vacuum_Pa, run.waves.vacuum_Pa)
+    )
     turned = {
         name: np.roll(getattr(run, name), turn)
         for name in ("duty", "peak_vacuum_Pa", "least_vacuum_Pa", "rise_s", "fall_s")
@@ -86,9 +88,7 @@ def _inlet_waves(run: RingRun, bellows: FloatArray, placement: Placement, robot:
     constant: dict[Source, float] = {OPEN: 0.0, HELD: run.supply_mean_Pa}
     samples = run.output_vacuum_Pa.shape[1]
     inlets = robot.inlets()
-    rows = [
-        row[inlet] if inlet in row else np.full(samples, constant[wiring.source(inlet)]) for inlet in inlets
-    ]
+    rows = [row[inlet] if inlet in row else np.full(samples, constant[wiring.source(inlet)]) for inlet in inlets]
     return Waves(run.period_s, inlets, np.array(rows).reshape(len(inlets), samples))
 
 
