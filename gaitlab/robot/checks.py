@@ -10,8 +10,8 @@ from gaitlab.robot.names import chain_places, check_names
 from gaitlab.robot.records import Robot
 from gaitlab.robot.tree import check_tree
 
-# A body engine handles some 120 joints; wider than any walker published. Chosen by us.
-INLETS_MAX = 64
+# A body engine handles some 120 joints, three for each inlet; no walker published has as many. Chosen by us.
+INLETS_MAX = 40
 BLOCKS_MAX = 64
 
 

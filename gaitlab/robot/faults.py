@@ -32,7 +32,7 @@ class Fault:
             head += f", table {table_name(tables)}"
         text = f"{head}: {key} must {self.rule}"
         text += f", got {self.got}" if self.got else ""
-        return f"{text}; usual fix: {self.fix}" if self.fix else text
+        return printable(f"{text}; usual fix: {self.fix}" if self.fix else text)
 
 
 class FaultError(RobotFileError):
@@ -56,6 +56,15 @@ def quoted(value: object) -> str:
         return "an array of tables"
     text = str(value).lower() if isinstance(value, bool) else repr(value)
     return text if len(text) <= SHOWN_LENGTH else text[: SHOWN_LENGTH - 3] + "..."
+
+
+def printable(text: str) -> str:
+    """The text with everything a terminal would obey or hide (control and direction characters) escaped.
+
+    >>> printable("a\x1b[31m")
+    'a\\x1b[31m'
+    """
+    return "".join(c if c.isprintable() else ascii(c)[1:-1] for c in text)
 
 
 def split(place: Place) -> tuple[Place, str]:

@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any
 
 from gaitlab.errors import RobotFileError, must
+from gaitlab.robot.faults import printable
 
 # Limits chosen by us: the largest honest robot file is a few dozen kB. The line limit bounds how many dots one key may
 # have (the TOML parser copies a dotted key once per dot), the depth limit how far a table may nest.
@@ -109,5 +110,5 @@ def _too_deep(source: str) -> str:
 def _not_toml(source: str, reason: str) -> str:
     found = re.search(r"\(at line (\d+), column (\d+)\)", reason)
     where = f"{source}, line {found[1]}, column {found[2]}" if found else source
-    shown = re.sub(r"\s*\(at [^)]*\)$", "", reason)
-    return f"{where}: must be TOML, got: {shown[:200]}; usual fix: key = value, texts in quotes, one key once per table"
+    shown = printable(re.sub(r"\s*\(at [^)]*\)$", "", reason)[:200])
+    return f"{where}: must be TOML, got: {shown}; usual fix: key = value, texts in quotes, one key once per table"

@@ -92,7 +92,7 @@ BROKEN: list[tuple[tuple[Any, ...], Any, str]] = [
     ((*LEG, "bellows"), 4, "bellows must be the name of a bellows type, got 4"),
     ((*LEG, "bellows"), None, r"table \[body.leg\] number 2: bellows must be given, or at least one unit"),
     ((*LEG, "unit"), [{"bellows": "leg", "inlet": "b"}], "bellows must be left out where units are given"),
-    (("body", "leg"), [], "leg must give the robot 1 to 64 air inlets in all, got 0"),
+    (("body", "leg"), [], "leg must give the robot 1 to 40 air inlets in all, got 0"),
     (("body", "leg"), {}, "leg must be a list of tables in square brackets, got a table"),
     (("wiring",), {"tied": [["a"]]}, " item 1 must tie two inlets or more"),
     (("wiring",), {"tied": [["a", "z"]]}, "must name inlets of this file, got 'z'"),

@@ -1,0 +1,86 @@
+"""Thousands of spoiled robot files: each ends in one clean message or in a robot that can be summed up."""
+
+from __future__ import annotations
+
+import math
+import random
+import resource
+import signal
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+
+from hypothesis import HealthCheck, given, note, settings
+from hypothesis import strategies as st
+
+from gaitlab.cli.check_command import summary
+from gaitlab.cli.output import json_text
+from gaitlab.errors import GaitlabError
+from gaitlab.robot.reader import canonical_document, read_robot, robot_from_document
+from tests.robot.mutations import BYTE_WAYS, DOCUMENT_WAYS, TEXT_WAYS, spoiled_bytes
+
+FILES = 6000
+HANG_S = 5  # a file that takes longer counts as a hang and ends the test
+MEMORY_MAX = 500 * 2**20
+VERDICTS: list[str] = []  # filled by the first test below, read by the next
+
+
+@contextmanager
+def no_hang() -> Iterator[None]:
+    def stop(*_: object) -> None:
+        raise TimeoutError(f"a robot file kept the reader busy for {HANG_S} s")
+
+    before = signal.signal(signal.SIGALRM, stop)
+    signal.alarm(HANG_S)
+    try:
+        yield
+    finally:
+        signal.alarm(0)
+        signal.signal(signal.SIGALRM, before)
+
+
+def judged(path: Path) -> str:
+    """'robot', or the message that refused the file; anything else is an error of ours and is raised."""
+    try:
+        file = read_robot(path)
+        facts = summary(file)
+    except GaitlabError as refusal:
+        text = str(refusal)
+        assert text.isprintable() and len(text) < 2_000
+        assert "must" in text or "usual fix" in text
+        return text
+    assert facts["ok"] and 0 < facts["wirings"]["distinct"] <= facts["wirings"]["raw"]
+    assert math.isfinite(facts["mass_g"])
+    assert "null" not in json_text(facts)
+    assert robot_from_document(file.document) == file.robot
+    assert canonical_document(file.document)
+    return "robot"
+
+
+@settings(max_examples=FILES, deadline=None, derandomize=True, database=None, suppress_health_check=list(HealthCheck))
+@given(chance=st.randoms(use_true_random=False))
+def test_a_spoiled_file_ends_in_a_clean_message_or_a_robot(chance: random.Random, tmp_path: Path) -> None:
+    data = spoiled_bytes(lambda options: chance.choice(list(options)))
+    note(repr(data[:20_000]))
+    path = tmp_path / "spoiled.toml"
+    path.write_bytes(data)
+    with no_hang():
+        VERDICTS.append(judged(path))
+
+
+def test_enough_files_were_tried_and_they_were_of_many_kinds() -> None:
+    assert len(VERDICTS) >= 5000
+    robots = VERDICTS.count("robot")
+    assert robots >= 100, "some changes are harmless"
+    assert len(VERDICTS) - robots >= 3000, "most are not"
+    rules = {text.split(" must ")[-1].split(", got")[0][:40] for text in VERDICTS}
+    assert len(rules) >= 60, "and they break many rules"
+
+
+def test_reading_them_took_little_memory() -> None:
+    assert resource.getrusage(resource.RUSAGE_SELF).ru_maxrss * 1024 < MEMORY_MAX
+
+
+def test_every_way_of_spoiling_is_of_its_own() -> None:
+    ways = [way.__name__ for way in (*DOCUMENT_WAYS, *TEXT_WAYS, *BYTE_WAYS)]
+    assert len(set(ways)) == len(ways) >= 25
