@@ -40,14 +40,15 @@ class IsoLaw:
         return 2.0 * ellipse / (a + math.sqrt(a * a + 4.0 * c * ellipse))
 
 
-def iso_law(part: IsoPart, gas: Gas) -> IsoLaw:
+def iso_law(part: IsoPart, gas: Gas, *, laminar_reynolds: float = LAMINAR_REYNOLDS) -> IsoLaw:
     """The law of a part by its C [m³/(s Pa) ANR] and b at the gas's temperature.
 
-    Choked flow at ambient upstream pressure is exactly C ρ0 p √(T0/T). Raises InputError for b outside 0…1 or C ≤ 0.
+    Choked flow at ambient upstream pressure is exactly C ρ0 p √(T0/T). `laminar_reynolds` is where linear and square loss
+    are equal; towards 0 the standard's own law. Raises InputError for b outside 0…1 or C ≤ 0.
     """
     _check(part)
     per_pressure = part.sonic_conductance_m3_s_Pa * DENSITY_ANR_KG_M3 * math.sqrt(TEMPERATURE_ANR_K / gas.temperature_K)
-    small = LAMINAR_REYNOLDS * gas.viscosity_Pa_s() * math.pi * equivalent_hole_m(part) / 4.0
+    small = laminar_reynolds * gas.viscosity_Pa_s() * math.pi * equivalent_hole_m(part) / 4.0
     # a m + c m² must give De = (1 − b) p² at m = per_pressure · p for p = ambient, and a = c · small.
     choked = per_pressure * gas.pressure_Pa
     square = (1.0 - part.critical_ratio) * gas.pressure_Pa**2 / (choked * (choked + small))

@@ -59,11 +59,12 @@ def pressure_knots(gas: Gas) -> FloatArray:
 def element_table(part: FlowPart, gas: Gas) -> ElementTable:
     """The fast form of a flow part in a gas; equal parts share one table."""
     if isinstance(part, IsoPart):
-        return _iso_table(iso_law(part, gas), pressure_knots(gas))
+        return iso_table(iso_law(part, gas), pressure_knots(gas))
     return _duct_table(section_of(as_duct(part, gas)), gas)
 
 
-def _iso_table(law: IsoLaw, pressures: FloatArray) -> ElementTable:
+def iso_table(law: IsoLaw, pressures: FloatArray) -> ElementTable:
+    """The table of an ISO 6358 law on these upstream pressures [Pa], evenly spaced in the logarithm."""
     complement = np.full(PRESSURE_KNOTS, 1.0 - law.critical_ratio)
     a, c = law.linear_Pa2_s_kg, law.square_Pa2_s2_kg2
     largest = law.ellipse_Pa2(float(pressures[-1]), 0.0)

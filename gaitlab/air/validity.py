@@ -1,9 +1,11 @@
-"""Where the duct model leaves its ground: named warnings, never silent."""
+"""Where the models of ducts and valves leave their ground: named warnings, never silent."""
 
 from __future__ import annotations
 
 from gaitlab.air.gas import Gas
 from gaitlab.air.section import SMOOTH_WALL_M, Duct, Section, section_of
+from gaitlab.air.valve_geometry import valve_warnings
+from gaitlab.robot.circuit import FlowPart, RectDuct, Ring, RoundDuct, SquareDuct, ValveGeometry
 
 KNUDSEN_MAX = (
     0.01  # above it gas slips at the wall (Gad-el-Hak, The fluid mechanics of microdevices, 1999: 0.001 to 0.1)
@@ -47,3 +49,16 @@ def _roughness(section: Section) -> str:
     if ratio <= ROUGHNESS_MAX:
         return ""
     return f"wall_roughness: {100 * ratio:.3g} % of the channel is above {100 * ROUGHNESS_MAX:g} %, measure the channel instead"
+
+
+def circuit_warnings(ring: Ring, gas: Gas, lowest_Pa: float) -> tuple[str, ...]:
+    """What is doubtful in a ring's resistors and valves, each text led by its table; `lowest_Pa` is the supply's pressure."""
+    valves = [("ring.valve", ring.valve)]
+    valves += [(f"ring.stage {own.stage} valve", own.valve) for own in ring.overrides if own.valve is not None]
+    parts: list[tuple[str, FlowPart]] = [("ring.resistor", ring.resistor)]
+    parts += [(f"ring.stage {own.stage} resistor", own.resistor) for own in ring.overrides if own.resistor is not None]
+    parts += [(f"{name}.open", valve.open) for name, valve in valves]
+    ducts = [(name, part) for name, part in parts if isinstance(part, SquareDuct | RectDuct | RoundDuct)]
+    drawn = [(name, valve) for name, valve in valves if isinstance(valve, ValveGeometry)]
+    found = [f"{name}: {text}" for name, duct in ducts for text in duct_warnings(duct, lowest_Pa, gas)]
+    return (*found, *(f"{name}: {text}" for name, valve in drawn for text in valve_warnings(valve)))

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import math
-
 from gaitlab.air.elastomer import lift_pressure_Pa, youngs_from_shore_Pa
 from gaitlab.air.gas import Gas
 from gaitlab.air.iso import equivalent_area_m2
@@ -11,6 +9,7 @@ from gaitlab.air.restrictor import equivalent_square
 from gaitlab.air.section import section_of
 from gaitlab.errors import InputError, must
 from gaitlab.robot.circuit import BenchRestrictor, FlowPart, IsoPart, Valve, ValveGeometry
+from gaitlab.robot.fields import MILLI
 
 STANDARD_Pa = 101_325.0
 # Mean gas pressure left between membrane and seat, as a share of atmosphere: 0 for a perfectly wetting contact that the
@@ -18,6 +17,9 @@ STANDARD_Pa = 101_325.0
 SEAT_FILM_SHARE = 0.5
 # A bulged membrane stands on average at about half its centre deflection over the seat line (paraboloid: exactly ½).
 MEAN_LIFT = 0.5
+ESTIMATE_WARNING = (
+    "estimate: threshold, span and sealing come from the drawing and may be off by half; measure one valve"
+)
 
 
 def valve_from_geometry(valve: ValveGeometry) -> Valve:
@@ -71,5 +73,16 @@ def open_area_m2(part: FlowPart) -> float:
         return equivalent_area_m2(part)
     if isinstance(part, BenchRestrictor):
         return equivalent_square(part, Gas()).side_m ** 2
-    area = section_of(part).area_m2
-    return area if math.isfinite(area) else 0.0
+    return section_of(part).area_m2
+
+
+def valve_warnings(valve: ValveGeometry) -> tuple[str, ...]:
+    """What is doubtful in the drawing of a valve: `shallow_gap` and `estimate`, each text beginning with its name."""
+    wanted = curtain_lift_m(valve)
+    if valve.gap_m >= wanted:
+        return (ESTIMATE_WARNING,)
+    shallow = (
+        f"shallow_gap: {valve.gap_m / MILLI:.3g} mm lets the membrane lift too little for the open channel "
+        f"({wanted / MILLI:.3g} mm would do); the real valve passes less than `open` says"
+    )
+    return (ESTIMATE_WARNING, shallow)

@@ -7,11 +7,15 @@ from typing import Any
 
 import click
 
+from gaitlab.air.gas import gas_of
+from gaitlab.air.supply import supply_law
+from gaitlab.air.validity import circuit_warnings
 from gaitlab.cli.options import json_option, robot_argument
 from gaitlab.cli.output import print_facts, print_json, warn
 from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import RobotFile, read_robot
 from gaitlab.robot.totals import mass_kg
+from gaitlab.robot.records import Robot
 from gaitlab.trust.tolerances import tolerances_of
 from gaitlab.wiring.space import WiringSpace
 
@@ -55,8 +59,14 @@ def summary(file: RobotFile) -> dict[str, Any]:
         "blocks": [block.name for block in robot.body.blocks],
         "mass_g": mass_kg(robot) * 1e3,
         "wirings": {"raw": space.raw, "distinct": space.distinct},
-        "warnings": list(file.warnings),
+        "warnings": [*file.warnings, *air_warnings(robot)],
     }
+
+
+def air_warnings(robot: Robot) -> tuple[str, ...]:
+    """What is doubtful about the air parts; raises InputError for a supply that cannot work at the ambient pressure."""
+    gas = gas_of(robot.ambient)
+    return circuit_warnings(robot.ring, gas, supply_law(robot.supply, gas).rest_Pa)
 
 
 def _print_human(facts: dict[str, Any]) -> None:
