@@ -24,6 +24,7 @@ COMMANDS = {
     "compare": "Wirings side by side, each with its reversed wave.",
     "spread": "What wirings do over the build tolerances.",
     "sheet": "One A4 page for the bench from a saved run.",
+    "page": "One self-contained HTML page from a saved run.",
 }
 
 EXIT_BAD_INPUT = 2

@@ -6,6 +6,7 @@ import json
 import math
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Any
 
 from gaitlab.robot.records import Robot
@@ -32,6 +33,11 @@ class SearchTask:
     identity: Identity
     objective: str = "travel"
     settings: WalkSettings = WalkSettings()
+
+    @cached_property
+    def document_json(self) -> str:
+        """The robot's document as workers get it."""
+        return json.dumps(self.document, sort_keys=True)
 
     @classmethod
     def of(
@@ -66,10 +72,9 @@ def run_search(task: SearchTask, strategy: Strategy, ledger: Ledger, workers: Wo
     What is asked for depends on the strategy and on earlier readings in the order of their asking, not on the order in which
     workers end: the same rows come out for any number of workers and after any interruption.
     """
-    document_json = json.dumps(task.document, sort_keys=True)
     try:
         while asks := strategy.ask():
-            jobs = [_job(task, document_json, ask) for ask in asks]
+            jobs = [job_of(task, ask) for ask in asks]
             _walk_unknown(task, ledger, workers, list(zip(asks, jobs, strict=True)), watch)
             if strategy.listens:
                 rows = ledger.known([job.key for job in jobs])
@@ -77,15 +82,15 @@ def run_search(task: SearchTask, strategy: Strategy, ledger: Ledger, workers: Wo
                     [reading_of(ask, rows[job.key], task.objective) for ask, job in zip(asks, jobs, strict=True)]
                 )
     except KeyboardInterrupt:
-        return False
-    finally:
         workers.close()
+        return False
     return True
 
 
-def _job(task: SearchTask, document_json: str, ask: Ask) -> Job:
+def job_of(task: SearchTask, ask: Ask) -> Job:
+    """The evaluation that an ask wants."""
     how = task.settings.lasting(ask.periods)
-    return Job(document_json, ask.wiring, how, task.identity.key(ask.wiring, how))
+    return Job(task.document_json, ask.wiring, how, task.identity.key(ask.wiring, how))
 
 
 def _walk_unknown(

@@ -7,12 +7,12 @@ import os
 import signal
 import threading
 from collections import deque
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from concurrent.futures import FIRST_COMPLETED, Executor, Future, ProcessPoolExecutor, wait
 from concurrent.futures.process import BrokenProcessPool
 from dataclasses import dataclass, field
 from itertools import islice
-from typing import Protocol
+from typing import Protocol, TypeVar
 
 from gaitlab.search.evaluate import WORKER_LOST, Evaluate, Evaluation, Job, failed_walk
 from gaitlab.search.guard import follow_parent
@@ -23,11 +23,17 @@ REMEDY = "walk this wiring alone with `gaitlab walk`: it ends the process (memor
 ONE_THREAD = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")
 
 
+Result = TypeVar("Result")
+
+
 class Workers(Protocol):
     """What a search needs: finished walks in any order, and an end."""
 
     def evaluated(self, jobs: Iterable[Job]) -> Iterator[tuple[Job, Evaluation]]:
         """Each job with its evaluation, in the order in which they end."""
+
+    def each(self, function: Callable[[Job], Result], jobs: Sequence[Job]) -> list[Result]:
+        """What `function` makes of each job, side by side and in their order."""
 
     def close(self) -> None:
         """Ends every process that was started, without waiting for what they are at."""
@@ -43,6 +49,10 @@ class InProcess:
         """Each job with its evaluation, in order."""
         for job in jobs:
             yield job, self.evaluate(job)
+
+    def each(self, function: Callable[[Job], Result], jobs: Sequence[Job]) -> list[Result]:
+        """What `function` makes of each job, in their order."""
+        return [function(job) for job in jobs]
 
     def close(self) -> None:
         """Nothing was started."""
@@ -85,6 +95,17 @@ class ExecutorWorkers:
                 running.clear()
                 self._restart()
             yield from self._given_up(suspects)
+
+    def each(self, function: Callable[[Job], Result], jobs: Sequence[Job]) -> list[Result]:
+        """What `function` makes of each job, side by side and in their order; done in this process if a worker dies at it."""
+        if self._executor is None:
+            self._executor = self.start()
+        futures = [self._executor.submit(function, job) for job in jobs]
+        try:
+            return [future.result() for future in futures]
+        except self.lost:
+            self._restart()
+            return [function(job) for job in jobs]
 
     def close(self) -> None:
         """Ends the executor without waiting for what it is at."""

@@ -1,0 +1,251 @@
+"""gaitlab search: every distinct wiring walked and ranked, or the best found with a fraction of the walks."""
+
+from __future__ import annotations
+
+import math
+import os
+import sys
+from pathlib import Path
+from typing import Any
+
+import click
+
+from gaitlab.cli.options import (
+    engine_option,
+    json_option,
+    out_option,
+    robot_argument,
+    seed_option,
+    workers_option,
+)
+from gaitlab.cli.output import Progress, print_facts, print_json, print_table, progress, warn
+from gaitlab.errors import GaitlabError, InputError, must
+from gaitlab.robot.checks import require_odd_ring
+from gaitlab.robot.reader import RobotFile, read_robot
+from gaitlab.search.cluster import Certificates, cluster_workers
+from gaitlab.search.evaluate import Evaluate
+from gaitlab.search.objective import MEANING, OBJECTIVES, SCALE, UNITS
+from gaitlab.search.ranking import Ranked
+from gaitlab.search.ranking_table import SMOOTH_WORDS
+from gaitlab.search.run import SearchTask, Step
+from gaitlab.search.settings import WalkSettings
+from gaitlab.search.strategies.choice import STRATEGIES, StrategyChoice, strategy_of
+from gaitlab.search.summary import DONE, INTERRUPTED, TIE_RULE, SearchSummary
+from gaitlab.search.whole import SearchPlan, search_robot
+from gaitlab.search.workers import Workers, local_workers
+from gaitlab.wiring.smooth import SmoothWaves
+
+SHOWN = 10  # places in the table; ranking.csv has all
+EXIT_FAILED = 1
+EXIT_INTERRUPTED = 130
+
+
+@click.command("search")
+@robot_argument
+@click.option("--strategy", type=click.Choice(list(STRATEGIES)), help="Default: the robot file's, else exhaustive.")
+@click.option(
+    "--objective", type=click.Choice(OBJECTIVES), help="What is ranked; default: the robot file's, else travel."
+)
+@click.option("--budget", type=int, help="Walks to spend at most; default: as many as the strategy wants.")
+@workers_option
+@click.option(
+    "--cluster", metavar="ADDRESS", help="Scheduler of a dask.distributed cluster instead of local processes."
+)
+@click.option("--tls-ca", type=click.Path(path_type=Path), help="Certificate of the cluster's authority (PEM).")
+@click.option("--tls-cert", type=click.Path(path_type=Path), help="Our certificate for the cluster (PEM).")
+@click.option("--tls-key", type=click.Path(path_type=Path), help="Our key for the cluster (PEM).")
+@click.option(
+    "--resume", is_flag=True, help="Go on with the ledger in the folder; walks that are there are not run again."
+)
+@out_option("Folder for ledger, ranking and pictures; default: runs/NAME.")
+@seed_option
+@engine_option
+@click.option(
+    "--pictures/--no-pictures", default=True, show_default=True, help="Draw ranking, footfalls and film at the end."
+)
+@json_option
+def command(robot_path: Path, as_json: bool, pictures: bool, **given: Any) -> None:
+    """Find the wiring that walks best: which ring output goes to which leg.
+
+    Every distinct wiring of the file's limits is walked until its travel per period has settled, and ranked beside its reversed
+    wave. Refused (exit 2): limits that leave no wiring, a budget under one, a folder that holds another search.
+
+    \b
+      gaitlab search robots/tray_row5.toml
+      gaitlab search robots/tray_row7.toml --strategy gp --budget 120 --workers 2
+    """
+    file = read_robot(robot_path)
+    require_odd_ring(file.robot)
+    task = _task(file, given)
+    choice = StrategyChoice(given["strategy"] or file.robot.search.strategy, given["budget"], given["seed"])
+    plan = SearchPlan(choice, _folder(file, given["out"]), given["resume"], " ".join(["gaitlab", *sys.argv[1:]]))
+    waves = SmoothWaves.of(file.robot, task.space)
+    expected = strategy_of(choice, task.space, waves).expected()
+    with progress(expected, "walks") as bar:
+        summary = search_robot(
+            file,
+            task,
+            plan,
+            start_workers=lambda evaluate: _workers(evaluate, given),
+            watch=_Watcher(bar, task.objective),
+        )
+    drawn = _drawn(plan.folder) if pictures and summary.best else ()
+    _tell(summary, task, drawn, as_json)
+
+
+def _task(file: RobotFile, given: dict[str, Any]) -> SearchTask:
+    objective = given["objective"] or file.robot.search.objective
+    return SearchTask.of(file.document, file.robot, objective=objective, settings=WalkSettings(engine=given["engine"]))
+
+
+def _folder(file: RobotFile, out: Path | None) -> Path:
+    return out or Path("runs") / file.robot.name
+
+
+def _workers(evaluate: Evaluate, given: dict[str, Any]) -> Workers:
+    if given["cluster"] is None:
+        return local_workers(evaluate, given["workers"] or _cores())
+    if given["workers"] is not None:
+        raise InputError(must("--workers", "left out with --cluster (the cluster has its own)", given["workers"]))
+    return cluster_workers(evaluate, given["cluster"], _certificates(given))
+
+
+def _cores() -> int:
+    return len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1
+
+
+def _certificates(given: dict[str, Any]) -> Certificates | None:
+    files = [given[name] for name in ("tls_ca", "tls_cert", "tls_key")]
+    if not any(files):
+        return None
+    if not all(files):
+        raise InputError(must("--tls-ca, --tls-cert and --tls-key", "given together", [str(f) for f in files if f]))
+    missing = [str(file) for file in files if not file.is_file()]
+    if missing:
+        raise InputError(must("TLS files", "readable files", missing))
+    return Certificates(*files)
+
+
+class _Watcher:
+    """Moves the bar and keeps the best so far in its note."""
+
+    def __init__(self, bar: Progress, objective: str) -> None:
+        self._bar, self._objective = bar, objective
+        self._best: float | None = None
+
+    def __call__(self, step: Step) -> None:
+        note = None
+        if step.score.value == step.score.value and (self._best is None or step.score.value > self._best):
+            self._best = step.score.value
+            shown = self._best * SCALE[self._objective]
+            note = f"best so far {shown:.3g} {UNITS[self._objective]} by {step.ask.wiring.text()}"
+        self._bar.advance(1, note, already_done=step.known)
+
+
+def _drawn(folder: Path) -> tuple[str, ...]:
+    """Draws the pictures; what cannot be drawn is told and does not spoil the search."""
+    from gaitlab.report.run_pictures import draw_run
+
+    try:
+        drawn = draw_run(folder)
+    except GaitlabError as error:
+        warn(str(error))
+        return ()
+    for reason in drawn.left_out:
+        warn(reason)
+    return tuple(str(path) for path in drawn.files)
+
+
+def _tell(summary: SearchSummary, task: SearchTask, drawn: tuple[str, ...], as_json: bool) -> None:
+    if as_json:
+        print_json({**summary.facts, "files": list(drawn)})
+    else:
+        _print_human(summary, task)
+    if summary.outcome != DONE:
+        raise click.exceptions.Exit(EXIT_INTERRUPTED if summary.outcome == INTERRUPTED else EXIT_FAILED)
+
+
+def _print_human(summary: SearchSummary, task: SearchTask) -> None:
+    facts = summary.facts
+    if summary.outcome != DONE:
+        click.echo(f"outcome: {summary.outcome}\nremedy: {summary.remedy}")
+    _print_places(summary, task)
+    failed = ", ".join(f"{count} {outcome}" for outcome, count in sorted(facts["failed"].items())) or "none"
+    print_facts(
+        [
+            ("wirings", f"{facts['raw']} in all, {facts['distinct']} distinct, {facts['evaluated']} walked"),
+            ("failed", failed),
+            *_smooth_lines(summary),
+            ("score", f"{MEANING[task.objective]} [{UNITS[task.objective]}]; {TIE_RULE}"),
+            *_screening_lines(summary),
+            ("simulated", f"{facts['simulated_s']:.0f} s in {facts['wall_s']:.0f} s"),
+            ("folder", facts["folder"]),
+        ]
+    )
+    click.echo(
+        "A distance from a physics engine is an estimate, good to 20–30 %: trust the order more than the length."
+    )
+
+
+def _print_places(summary: SearchSummary, task: SearchTask) -> None:
+    headers = [
+        "rank",
+        "wiring",
+        UNITS[task.objective],
+        "±",
+        "mm/s",
+        "drift mm",
+        "turn °",
+        "tied",
+        "wave",
+        "smooth",
+        "reversed",
+    ]
+    shown = list(summary.places[:SHOWN])
+    shown += [place for place in summary.smooth if place.rank > SHOWN]
+    print_table(headers, (_cells(place, task.objective) for place in shown))
+
+
+def _cells(place: Ranked, objective: str) -> list[object]:
+    scale, facts = SCALE[objective], place_table_facts(place)
+    return [
+        place.rank,
+        place.wiring.text(),
+        place.score.value * scale,
+        place.score.scatter * scale,
+        place.walk.speed_m_s * 1e3,
+        facts["drift"],
+        facts["turn"],
+        place.tied_with_best,
+        place.walk.wave.direction if place.settled else "screened only",
+        SMOOTH_WORDS[place.smooth] or None,
+        facts["reversed"],
+    ]
+
+
+def place_table_facts(place: Ranked) -> dict[str, object]:
+    """Drift, turn and the reversed wave of one place as the table shows them."""
+    back = place.reversed_walk
+    behind = None if back is None else f"rank {place.reversed_rank}: {back.travel_m * 1e3:.3g} mm"
+    return {"drift": place.walk.drift_m * 1e3, "turn": math.degrees(place.walk.turn_rad), "reversed": behind}
+
+
+def _smooth_lines(summary: SearchSummary) -> list[tuple[str, object]]:
+    lines: list[tuple[str, object]] = [
+        (
+            f"smooth wave, {SMOOTH_WORDS[place.smooth]}",
+            f"rank {place.rank}, {place.walk.travel_m * 1e3:.4g} mm a period: {place.wiring.text()}",
+        )
+        for place in summary.smooth
+    ]
+    lead = summary.facts["best_over_smooth_percent"]
+    if lead is not None:
+        lines.append(("best against the better smooth wave", f"{lead:+.1f} %"))
+    return lines
+
+
+def _screening_lines(summary: SearchSummary) -> list[tuple[str, object]]:
+    if summary.screening is None:
+        return []
+    text = f"{summary.screening.rank_correlation:.3f} over the {summary.screening.pairs} wirings walked both ways"
+    return [("rank correlation of short with settled walks", text)]

@@ -1,0 +1,114 @@
+"""A whole search: opens the folder, runs the strategy, ranks, walks the winner once more for the pictures, writes the record."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+
+from gaitlab.errors import RunFolderError
+from gaitlab.robot.reader import RobotFile
+from gaitlab.search.evaluate import Evaluate, evaluate
+from gaitlab.search.finals import Final, best_ring, finals_of, write_traces
+from gaitlab.search.ledger import Ledger
+from gaitlab.search.ledger_file import LEDGER_FILE, created, reopened
+from gaitlab.search.ranking import Ranking
+from gaitlab.search.ranking_table import write_ranking
+from gaitlab.search.run import SearchTask, Watch, run_search
+from gaitlab.search.run_record import FinalRings, RunFacts, write_run
+from gaitlab.search.strategies.choice import StrategyChoice, strategy_of
+from gaitlab.search.summary import SearchSummary, summary_of
+from gaitlab.search.workers import Workers
+from gaitlab.wiring.smooth import SmoothWaves
+
+RANKING_FILE = "ranking.csv"
+EQUALS_NOTED_MAX = 10_000  # up to this many wirings the ledger also names every equal one; chosen by us
+
+
+@dataclass(frozen=True)
+class SearchPlan:
+    """How to search: strategy, folder, whether to go on with what is there, and the command line for the record."""
+
+    choice: StrategyChoice
+    folder: Path
+    resume: bool = False
+    command: str = ""
+
+
+def search_robot(
+    file: RobotFile,
+    task: SearchTask,
+    plan: SearchPlan,
+    *,
+    start_workers: Callable[[Evaluate], Workers],
+    watch: Watch,
+    evaluating: Evaluate = evaluate,
+) -> SearchSummary:
+    """Searches the wirings of a robot and leaves ledger, ranking.csv, run.json and traces in the plan's folder.
+
+    Raises RunFolderError, with nothing overwritten, for a folder that is taken or belongs to another robot.
+    """
+    begin = time.perf_counter()
+    waves = SmoothWaves.of(task.robot, task.space)
+    strategy = strategy_of(plan.choice, task.space, waves)
+    with open_ledger(plan, task) as ledger:
+        workers = start_workers(evaluating)
+        try:
+            finished = run_search(task, strategy, ledger, workers, watch)
+            _note_equals(task, ledger)
+            ranking = Ranking(ledger, waves, task.objective, task.settings)
+            finals, finished = _finals(task, ranking, workers, finished)
+        finally:
+            workers.close()
+        facts = RunFacts(
+            robot_path=file.path.name,
+            robot_text=file.text,
+            command=plan.command,
+            finished=finished,
+            strategy=plan.choice.name,
+            seed=plan.choice.seed,
+            wall_s=time.perf_counter() - begin,
+        )
+        _write(plan.folder, task, facts, ranking, finals)
+        return summary_of(task, facts, ranking, ledger, plan.folder)
+
+
+def open_ledger(plan: SearchPlan, task: SearchTask) -> Ledger:
+    """A new ledger in the plan's folder, or with `resume` the one that is there. Raises RunFolderError."""
+    path = plan.folder / LEDGER_FILE
+    if not plan.resume:
+        if plan.folder.exists() and not plan.folder.is_dir():
+            raise RunFolderError(f"{plan.folder} is a file, not a folder; usual fix: choose another folder with --out")
+        return created(path, task.identity)
+    ledger = reopened(path, task.identity)
+    ledger.forget_lost()
+    return ledger
+
+
+def _note_equals(task: SearchTask, ledger: Ledger) -> None:
+    """In a small space every wiring gets its fate: those that a symmetry makes equal are noted with the one they equal."""
+    space = task.space
+    if space.raw <= EQUALS_NOTED_MAX:
+        walked = {text for (text,) in ledger.select("SELECT DISTINCT wiring FROM walks")}
+        pairs = ((other, w) for w in space if w.text() in walked for other in space.orbit(w) if other != w)
+        ledger.note_equals(pairs)
+
+
+def _finals(task: SearchTask, ranking: Ranking, workers: Workers, finished: bool) -> tuple[list[Final], bool]:
+    """After Ctrl-C only the ring is solved; Ctrl-C during the last walks leaves out the films."""
+    best = ranking.first(1)
+    if not best:
+        return [], finished
+    try:
+        return (finals_of(task, best[0], workers) if finished else best_ring(task, best[0])), finished
+    except KeyboardInterrupt:
+        workers.close()
+        return best_ring(task, best[0]), False
+
+
+def _write(folder: Path, task: SearchTask, facts: RunFacts, ranking: Ranking, finals: list[Final]) -> None:
+    write_ranking(folder / RANKING_FILE, ranking, task.objective)
+    rings = [final.ring for final in finals] + [None, None]
+    write_traces(folder, finals)
+    write_run(folder, task, facts, ranking, FinalRings(rings[0], rings[1]))
