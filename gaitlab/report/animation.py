@@ -15,6 +15,7 @@ from gaitlab.errors import InputError, must
 from gaitlab.gait.records import Trace
 from gaitlab.report.body_view import draw_body, draw_feet
 from gaitlab.report.canvas import Canvas
+from gaitlab.report.moments import even_moments
 from gaitlab.report.ring_view import draw_ring
 from gaitlab.report.solids import Solid, solids_of
 from gaitlab.report.stage_set import COLUMN, RING, StageSet, Stretch, stage_set
@@ -60,26 +61,12 @@ def film_of(
 
     Raises InputError when the trace holds less than one period or the counts are not above zero.
     """
-    if periods < 1 or frames_per_period < 2:
-        raise InputError(must("periods and frames_per_period", "at least 1 and 2", (periods, frames_per_period)))
-    frames = _chosen_frames(trace, periods, frames_per_period)
+    frames = even_moments(trace, periods=periods, per_period=frames_per_period)
     solids = solids_of(trace.parts)
     full = max(float(trace.vacuum_Pa.max()), float(ring.output_vacuum_Pa.max()), 1.0)
     stretch = Stretch.of(trace, solids, range(frames[0], frames[-1] + 1))
     stage = stage_set(stretch, title=title, subtitle=wiring.text(), full_Pa=full)
     return Film(trace, ring, wiring, solids, frames, stage, full)
-
-
-def _chosen_frames(trace: Trace, periods: int, per_period: int) -> tuple[int, ...]:
-    """Indices of the instants nearest to an even beat over the last whole periods."""
-    step = float(np.median(np.diff(trace.time_s))) if len(trace.time_s) > 1 else 0.0
-    held = (trace.time_s[-1] - trace.time_s[0] + step) / trace.period_s if step else 0.0
-    whole = min(periods, int(held + 1e-6))
-    if whole < 1:
-        raise InputError(must("trace", "at least one period long", f"{held:.2f} periods", "record more periods"))
-    end = trace.time_s[-1] + step
-    wanted = end - trace.period_s * (whole - np.arange(whole * per_period) / per_period)
-    return tuple(int(np.argmin(np.abs(trace.time_s - moment))) for moment in wanted)
 
 
 def painted(film: Film, index: int) -> Image.Image:

@@ -12,7 +12,7 @@ def unrolled(intervals: Sequence[Interval], periods: float) -> list[Interval]:
 
     An end before its start (or above 1) means that the interval runs on into the next period.
 
-    >>> unrolled([(0.75, 0.25)], 2)
+    >>> unrolled([(0.75, 0.25)], 2.0)
     [(0.0, 0.25), (0.75, 1.25), (1.75, 2.0)]
     """
     pieces = []

@@ -10,7 +10,7 @@
     finished    false when the search was cut short (Ctrl-C, budget): the ranking is what was known
     robot       {"path": file name, "text": the file as read, "document": the parsed TOML}
     search      {"strategy", "objective", "raw", "distinct", "evaluated", "failed": {outcome: n}, "simulated_s", "wall_s", "seed"}
-    ranking     best first: [{"wiring": {inlet: source}, "rank", "tied_with_best", "walk": Walk,
+    ranking     best first: [{"wiring": {inlet: source}, "rank", "tied_with_best", "settled", "smooth", "walk": Walk,
                 "reversed_wiring": {…} | null, "reversed_rank": n | null, "reversed_walk": Walk | null}]
     rings       {"best": RingRun, "reversed": RingRun | null}
     rechecks    [{"name", "order_kept": true | false | null, "travel_m": best wiring's travel, "note"}]       (may be absent)
@@ -45,7 +45,10 @@ AGAIN = "run `gaitlab search ROBOT --out FOLDER` to make one"
 
 @dataclass(frozen=True)
 class RankedWiring:
-    """One line of the ranking: a wiring, how it walked, and the same with the wave reversed where that was run."""
+    """One line of the ranking: a wiring, how it walked, and the same with the wave reversed where that was run.
+
+    `settled` is false for a wiring that was only screened by a short walk; `smooth` is 1 or −1 for an evenly spaced wave.
+    """
 
     wiring: Wiring
     rank: int
@@ -54,6 +57,8 @@ class RankedWiring:
     reversed_wiring: Wiring | None
     reversed_rank: int | None
     reversed_walk: Walk | None
+    settled: bool = True
+    smooth: int = 0
 
 
 @dataclass(frozen=True)
@@ -220,6 +225,8 @@ def _ranked(row: Mapping[str, Any], name: str) -> RankedWiring:
         reversed_wiring=_wiring(row.get("reversed_wiring")),
         reversed_rank=row.get("reversed_rank"),
         reversed_walk=_optional(Walk, row.get("reversed_walk"), f"{name}.reversed_walk"),
+        settled=bool(row.get("settled", True)),
+        smooth=int(row.get("smooth", 0)),
     )
 
 
