@@ -57,7 +57,7 @@ class FlowElements:
         >>> from gaitlab.robot.circuit import SquareDuct
         >>> elements = FlowElements.of([SquareDuct(0.5e-3, 10e-3)], Gas())
         >>> flow, by_a, by_b = elements.flow(np.array([101_325.0]), np.array([44_325.0]))
-        >>> round(1e6 * flow[0], 0)
+        >>> float(round(1e6 * flow[0]))
         42.0
         """
         up, difference, ellipse, by_up, by_down = self._work[:5]

@@ -59,10 +59,10 @@ def quoted(value: object) -> str:
 
 
 def printable(text: str) -> str:
-    """The text with everything a terminal would obey or hide (control and direction characters) escaped.
+    r"""The text with everything a terminal would obey or hide (control and direction characters) escaped.
 
-    >>> printable("a\x1b[31m")
-    'a\\x1b[31m'
+    >>> printable("a\tb")
+    'a\\tb'
     """
     return "".join(c if c.isprintable() else ascii(c)[1:-1] for c in text)
 
