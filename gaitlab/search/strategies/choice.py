@@ -7,7 +7,11 @@ from dataclasses import dataclass
 
 from gaitlab.errors import InputError, must
 from gaitlab.search.strategies.ask_tell import Strategy
+from gaitlab.search.strategies.closing import Closing
 from gaitlab.search.strategies.exhaustive import Exhaustive
+from gaitlab.search.strategies.process_search import ProcessSearch
+from gaitlab.search.strategies.race import Race
+from gaitlab.search.strategies.random_draws import RandomDraws
 from gaitlab.wiring.smooth import SmoothWaves
 from gaitlab.wiring.space import WiringSpace
 
@@ -28,8 +32,23 @@ def _exhaustive(choice: StrategyChoice, space: WiringSpace, waves: SmoothWaves) 
     return Exhaustive(space, choice.budget)
 
 
+def _race(choice: StrategyChoice, space: WiringSpace, waves: SmoothWaves) -> Strategy:
+    return Closing(Race(space, choice.budget, choice.seed), space, waves.wirings())
+
+
+def _process(choice: StrategyChoice, space: WiringSpace, waves: SmoothWaves) -> Strategy:
+    return Closing(ProcessSearch(space, waves.wirings(), choice.budget, choice.seed), space, waves.wirings())
+
+
+def _random(choice: StrategyChoice, space: WiringSpace, waves: SmoothWaves) -> Strategy:
+    return Closing(RandomDraws(space, choice.budget, choice.seed), space, waves.wirings())
+
+
 STRATEGIES: dict[str, Maker] = {
     "exhaustive": _exhaustive,
+    "race": _race,
+    "gp": _process,
+    "random": _random,
 }
 
 

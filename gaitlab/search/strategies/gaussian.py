@@ -1,0 +1,43 @@
+"""A Gaussian process on wirings: what the walks so far say about those not walked."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.linalg import cho_solve, cholesky, solve_triangular
+
+FloatArray = NDArray[np.float64]
+
+# Variance beside the kernel's, as a share of the readings' variance: what a short walk says wrongly; chosen by us.
+NOISE = 1e-3
+
+
+@dataclass(frozen=True)
+class Posterior:
+    """The process after some readings: standardised readings, their kernel's factor and weights."""
+
+    mean: float
+    spread: float
+    factor: FloatArray
+    weights: FloatArray
+
+    def predicted(self, kernel: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """Mean and standard deviation [unit of the readings] of wirings by their kernel rows (wirings, readings).
+
+        μ = m + k K⁻¹ y, σ² = s² (1 − k K⁻¹ kᵀ) with K = kernel of the readings + noise; see Rasmussen & Williams, Gaussian
+        Processes for Machine Learning (2006), equations 2.25 and 2.26.
+        """
+        through = solve_triangular(self.factor, kernel.T, lower=True, check_finite=False)
+        variance = np.maximum(0.0, 1.0 - np.sum(through**2, axis=0))
+        return self.mean + self.spread * (kernel @ self.weights), self.spread * np.sqrt(variance)
+
+
+def posterior(kernel: FloatArray, readings: FloatArray, noise: float = NOISE) -> Posterior:
+    """The process that has seen `readings` (n,) at wirings whose kernel with each other is `kernel` (n, n)."""
+    mean, spread = float(np.mean(readings)), float(np.std(readings))
+    spread = spread if spread > 0.0 else 1.0
+    factor = cholesky(kernel + noise * np.eye(len(readings)), lower=True, check_finite=False)
+    weights = cho_solve((factor, True), (readings - mean) / spread, check_finite=False)
+    return Posterior(mean, spread, factor, weights)
