@@ -14,8 +14,8 @@ from gaitlab.cli.options import json_option, robot_argument
 from gaitlab.cli.output import print_facts, print_json, warn
 from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import RobotFile, read_robot
-from gaitlab.robot.totals import mass_kg
 from gaitlab.robot.records import Robot
+from gaitlab.robot.totals import mass_kg
 from gaitlab.trust.tolerances import tolerances_of
 from gaitlab.wiring.space import WiringSpace
 
