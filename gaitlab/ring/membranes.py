@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from gaitlab.air.valve import ValveBank, opening_target
+from gaitlab.air.valve import ValveBank, conductance_share, opening_target
 from gaitlab.ring.waves import FloatArray
 from gaitlab.robot.circuit import Valve
 
@@ -28,7 +28,14 @@ class Membranes:
     def target(
         self, control_Pa: FloatArray, output_Pa: FloatArray, opening: FloatArray
     ) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
-        """Target opening and its derivatives with control pressure, output pressure (absolute) and opening, each (N,)."""
+        """Target share of the open conductance, and its derivatives with control pressure, output pressure (absolute) and share.
+
+        The network follows the share itself, leak included: the membrane's place is (share − leak)/(1 − leak), and both move
+        with the same time constant.
+        """
         control, output = self.ambient_Pa - control_Pa, self.ambient_Pa - output_Pa
-        target, slopes = opening_target(control, self.atmosphere, output, opening, self.bank)
-        return target, -slopes.by_control, -slopes.by_b, slopes.by_opening
+        lifted = 1.0 - self.bank.leak_fraction
+        place = (opening - self.bank.leak_fraction) / lifted
+        target, slopes = opening_target(control, self.atmosphere, output, place, self.bank)
+        share = conductance_share(target, self.bank)
+        return share, -lifted * slopes.by_control, -lifted * slopes.by_b, slopes.by_opening
