@@ -20,9 +20,9 @@ from gaitlab.robot.parts import Bellows, BellowsGeometry
 FloatArray = NDArray[np.float64]
 Drawing = Callable[[BellowsGeometry], float]
 
-# Full vacuum takes a bellows at most this fraction of the solid deflection past its limit (chosen by us: close enough
-# for an estimate, soft enough for a step of 1 ms).
-STOP_WIDTH = 0.1
+# Full vacuum takes a bellows at most this fraction of the solid deflection past its limit (chosen by us: convolutions
+# touch one after the other, and a harder stop would need a shorter step).
+STOP_WIDTH = 0.25
 # No solid limit given and no drawing to tell it: this many times the measured free deflection (chosen by us).
 STOP_BEYOND_MEASURED = 1.5
 FULL_VACUUM_PA = 101_325.0

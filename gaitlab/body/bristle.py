@@ -3,14 +3,10 @@
 from __future__ import annotations
 
 import math
-
-import numpy as np
-from numpy.typing import NDArray
-
-FloatArray = NDArray[np.float64]
+from collections.abc import Sequence
 
 
-def bristle_friction(friction: tuple[float, float, float], sliding: FloatArray, forward: FloatArray) -> float:
+def bristle_friction(friction: tuple[float, float, float], sliding: Sequence[float], forward: Sequence[float]) -> float:
     """Friction coefficient of a foot that slides, or would slide, along `sliding`; only the ground plane's x and y count.
 
     1/μ² = cos²φ/μ_x² + sin²φ/μ_y², φ from the foot's forward axis, μ_x the forward or backward value by the sign of

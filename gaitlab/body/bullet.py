@@ -3,13 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Any
 
 import numpy as np
 import pybullet
 from numpy.typing import NDArray
 
-from gaitlab.body.bristle import bristle_friction
+from gaitlab.body.bullet_feet import BulletFeet
 from gaitlab.body.checks import check_step
 from gaitlab.body.drive import Drive
 from gaitlab.body.engine import EngineSettings, FeetState
@@ -39,11 +38,7 @@ class BulletEngine:
         self._plane = _plane(self._client, model)
         self._body = _multibody(self._client, model, settings)
         self._joints = list(range(len(model.joints)))
-        self._feet_links = [foot.link - 1 for foot in model.feet]
-        self._friction = [foot.friction[0] for foot in model.feet]
-        self._bristles = [index for index, foot in enumerate(model.feet) if foot.bristle]
-        root_com = pybullet.getDynamicsInfo(self._body, -1, physicsClientId=self._client)[3:5]
-        self._from_root_com = pybullet.invertTransform(*root_com)
+        self._feet = BulletFeet(self._client, self._body, self._plane, model)
 
     def joint_state(self) -> FloatArray:
         """Joint positions and speeds, shape (J, 2)."""
@@ -61,12 +56,11 @@ class BulletEngine:
             physicsClientId=self._client,
         )
         pybullet.stepSimulation(physicsClientId=self._client)
-        if self._bristles:
-            self._comb()
+        self._feet.comb()
 
     def base_pose(self) -> tuple[FloatArray, FloatArray]:
         """Root block's middle and orientation."""
-        place, turn = pybullet.multiplyTransforms(*self._root(), *self._from_root_com)
+        place, turn = self._feet.root_frame()
         return np.array(place), np.array(turn)
 
     def base_velocity(self) -> tuple[FloatArray, FloatArray]:
@@ -76,9 +70,7 @@ class BulletEngine:
 
     def feet(self) -> FeetState:
         """Places, speeds and loads of the feet."""
-        loads = np.array([sum(point[9] for point in points) for points in self._contacts()])
-        places, turns, speeds, spins = self._foot_motion()
-        return FeetState(places, speeds, turns, spins, loads)
+        return self._feet.state()
 
     def part_poses(self) -> tuple[FloatArray, FloatArray]:
         """Centres and orientations of all parts of the picture."""
@@ -91,7 +83,8 @@ class BulletEngine:
     def centre_of_mass(self) -> FloatArray:
         """Centre of mass of the whole body."""
         states = pybullet.getLinkStates(self._body, self._joints, physicsClientId=self._client) if self._joints else ()
-        places = [self._root()[0], *(state[0] for state in states)]
+        root = pybullet.getBasePositionAndOrientation(self._body, physicsClientId=self._client)[0]
+        places = [root, *(state[0] for state in states)]
         masses = np.array([link.mass_kg for link in self.model.links])
         return np.asarray(masses @ np.array(places) / masses.sum())
 
@@ -99,67 +92,11 @@ class BulletEngine:
         """Disconnect the client."""
         pybullet.disconnect(physicsClientId=self._client)
 
-    def _root(self) -> tuple[Floats, Floats]:
-        """Pose of the root link's centre-of-mass frame, as Bullet keeps it."""
-        place, turn = pybullet.getBasePositionAndOrientation(self._body, physicsClientId=self._client)
-        return place, turn
-
     def _link_frames(self) -> list[tuple[Floats, Floats]]:
         """Poses of all link frames, root first."""
-        root = pybullet.multiplyTransforms(*self._root(), *self._from_root_com)
+        root = self._feet.root_frame()
         states = pybullet.getLinkStates(self._body, self._joints, physicsClientId=self._client)
         return [root, *((state[4], state[5]) for state in states)]
-
-    def _contacts(self) -> list[list[tuple[Any, ...]]]:
-        """Contact points with the ground, by foot."""
-        points: list[list[tuple[Any, ...]]] = [[] for _ in self.model.feet]
-        by_link: dict[int, list[int]] = {}
-        for index, link in enumerate(self._feet_links):
-            by_link.setdefault(link, []).append(index)
-        for point in pybullet.getContactPoints(self._body, self._plane, physicsClientId=self._client):
-            owners = by_link.get(point[3], [])
-            points[owners[0] if len(owners) == 1 else self._nearest(owners, point[5])].append(point)
-        return points
-
-    def _nearest(self, owners: list[int], place: Floats) -> int:
-        """Which of several feet on one link a contact belongs to: the nearest."""
-        places = self._foot_motion()[0][owners]
-        return owners[int(np.argmin(np.linalg.norm(places - np.array(place), axis=1)))]
-
-    def _foot_motion(self) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
-        """Middle of each foot, orientation, velocity of the middle, turning rate."""
-        rows = []
-        for foot in self.model.feet:
-            frame, com, linear, spin = self._link_motion(foot.link)
-            middle = np.mean(foot.centres_m, axis=0)
-            place = np.array(pybullet.multiplyTransforms(*frame, middle.tolist(), NO_TURN)[0])
-            rows.append((place, frame[1], np.array(linear) + np.cross(spin, place - com), spin))
-        places, turns, speeds, spins = (np.array(column) for column in zip(*rows, strict=True))
-        return places, turns, speeds, spins
-
-    def _link_motion(self, link: int) -> tuple[tuple[Floats, Floats], FloatArray, Floats, Floats]:
-        if link == 0:
-            linear, angular = pybullet.getBaseVelocity(self._body, physicsClientId=self._client)
-            frame = pybullet.multiplyTransforms(*self._root(), *self._from_root_com)
-            return frame, np.array(self._root()[0]), linear, angular
-        state = pybullet.getLinkState(self._body, link - 1, computeLinkVelocity=1, physicsClientId=self._client)
-        return (state[4], state[5]), np.array(state[0]), state[6], state[7]
-
-    def _comb(self) -> None:
-        """Give every bristle foot the friction of the way it tends to slide, read from the force that holds it now."""
-        contacts = self._contacts()
-        for index in self._bristles:
-            force = sum(point[10] * np.array(point[11]) + point[12] * np.array(point[13]) for point in contacts[index])
-            if not contacts[index]:
-                continue
-            foot = self.model.feet[index]
-            forward = np.array(pybullet.rotateVector(self._link_motion(foot.link)[0][1], [1.0, 0.0, 0.0]))
-            friction = bristle_friction(foot.friction, -np.asarray(force), forward)
-            if friction != self._friction[index]:
-                self._friction[index] = friction
-                pybullet.changeDynamics(
-                    self._body, foot.link - 1, lateralFriction=friction, physicsClientId=self._client
-                )
 
 
 def _set_physics(client: int, model: BodyModel, settings: EngineSettings) -> None:

@@ -155,9 +155,12 @@ def mass_beyond(model: BodyModel, first: int) -> float:
 
 
 def explicit_number(model: BodyModel, *, step_s: float, inertia_factor: float) -> float:
-    """Largest 2·dt·λ + dt²·ω², each over the modes of the body floating free; the step is stable below 4."""
+    """Largest 2·dt·λ + dt²·ω² over the modes of the body floating free, solid limits as far in as the supply drives them.
+
+    The step is stable below 4.
+    """
     mass = free_joint_mass(model, inertia_factor)
     damping = step_damping(model, step_s=step_s, inertia_factor=inertia_factor)
-    stiffness = np.diag([joint.stiffness for joint in model.joints])
+    stiffness = np.diag([joint.stiffest(model.vacuum_max_Pa) for joint in model.joints])
     fastest = eigh(2.0 * step_s * damping + step_s**2 * stiffness, mass, eigvals_only=True)
     return float(fastest[-1])

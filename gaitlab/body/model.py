@@ -18,6 +18,7 @@ from gaitlab.gait.records import Part
 from gaitlab.robot.circuit import Vector
 from gaitlab.robot.parts import Block, Foot, Leg, Spine
 from gaitlab.robot.records import Robot
+from gaitlab.robot.suspicions import greatest_vacuum_Pa
 from gaitlab.robot.tree import root_block
 
 __all__ = ["BodyModel", "body_model"]
@@ -61,6 +62,7 @@ class _Builder:
             ground_friction=self.robot.ground.friction_factor,
             start_height_m=0.0,
             length_m=0.0,
+            vacuum_max_Pa=greatest_vacuum_Pa(self.robot) or self.robot.ambient.pressure_Pa,
             warnings=tuple(text for law in self.laws.values() for text in law.warnings),
         )
         return replace(model, start_height_m=start_height(model), length_m=body_length(model))

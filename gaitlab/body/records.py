@@ -39,6 +39,12 @@ class Joint:
     stop_gain: float
     actuation: tuple[tuple[str, float], ...]
 
+    def stiffest(self, vacuum_Pa: float) -> float:
+        """Stiffness with the solid limit as far in as `vacuum_Pa` drives it: k √(1 + 4 (stop_gain/k) (P/k − stop_at))."""
+        pull = max((abs(gain) for _, gain in self.actuation), default=0.0) * vacuum_Pa
+        past = max(pull / self.stiffness - self.stop_at, 0.0)
+        return float(self.stiffness * np.sqrt(1.0 + 4.0 * self.stop_gain / self.stiffness * past))
+
 
 @dataclass(frozen=True)
 class Link:
@@ -124,7 +130,7 @@ class ChainModel:
 class BodyModel:
     """An engine-neutral body: links in an order where parents come first, feet, looks, and the ground under it.
 
-    `start_height_m` puts the lowest foot on the ground with all joints at zero.
+    `start_height_m` puts the lowest foot on the ground with all joints at zero; `vacuum_max_Pa` is the most the supply can do.
     """
 
     name: str
@@ -138,6 +144,7 @@ class BodyModel:
     ground_friction: float
     start_height_m: float
     length_m: float
+    vacuum_max_Pa: float
     warnings: tuple[str, ...] = ()
 
     @property

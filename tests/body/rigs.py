@@ -27,7 +27,7 @@ def bending(
     segments: int = 6,
     stiffness: float = 0.02,
     free_rad: float = 0.8,
-    mass_kg: float = 1e-4,
+    mass_kg: float = 1e-3,
     axial_N_m: float = 400.0,
     bend_damping_s: float = 0.04,
 ) -> Bellows:
@@ -71,7 +71,7 @@ def robot_with(body: Body, bellows: Sequence[Bellows], feet: Sequence[Foot], gro
     return replace(ROW5, body=body, bellows=tuple(bellows), feet=tuple(feet), ground=ground or Ground())
 
 
-def cantilever(bellows: Bellows, *, tip_kg: float, toward: str = "down", tip_size_m: float = 1e-3) -> Robot:
+def cantilever(bellows: Bellows, *, tip_kg: float, toward: str = "down", tip_size_m: float = 0.03) -> Robot:
     """A small block at the end of a bellows that sticks out backwards from a base of 200 kg on four skids."""
     base = Block("base", (0.2, 0.2, 0.2), 200.0)
     tip = Block("tip", (tip_size_m,) * 3, tip_kg)
