@@ -128,7 +128,9 @@ def _estimate(walk: Walk) -> SpeedEstimate | None:
 
 def _estimate_facts(walk: Walk) -> dict[str, Any] | None:
     estimate = _estimate(walk)
-    return estimate and {
+    if estimate is None:
+        return None
+    return {
         "speed_mm_s": [v * 1e3 for v in estimate.speed_m_s],
         "body_lengths_s": estimate.body_lengths_s,
         "body_lengths_per_period": estimate.body_lengths_per_period,

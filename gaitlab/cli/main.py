@@ -23,6 +23,7 @@ COMMANDS = {
     "walk": "Walk one wiring and measure it.",
     "compare": "Wirings side by side, each with its reversed wave.",
     "spread": "What wirings do over the build tolerances.",
+    "match": "Measured pressure traces become as-built parts and a diagnosis.",
     "sheet": "One A4 page for the bench from a saved run.",
     "page": "One self-contained HTML page from a saved run.",
 }
