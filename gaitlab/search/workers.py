@@ -84,27 +84,26 @@ class ExecutorWorkers:
             if not running:
                 return
             done, _ = wait(running, return_when=FIRST_COMPLETED)
+            lost: list[Job] = []
             for future in done:
                 job = running.pop(future)
                 try:
                     yield job, future.result()
                 except self.lost:
-                    suspects.append(job)
-            if suspects and self._broken(done):
-                suspects.extend(running.values())
+                    lost.append(job)
+            if any(_broken(future) for future in done):
+                lost.extend(running.values())
                 running.clear()
-                self._restart()
-            yield from self._given_up(suspects)
+                self.close()
+            yield from self._judged(lost, suspects)
 
     def each(self, function: Callable[[Job], Result], jobs: Sequence[Job]) -> list[Result]:
         """What `function` makes of each job, side by side and in their order; done in this process if a worker dies at it."""
-        if self._executor is None:
-            self._executor = self.start()
-        futures = [self._executor.submit(function, job) for job in jobs]
         try:
+            futures = [self._started().submit(function, job) for job in jobs]
             return [future.result() for future in futures]
         except self.lost:
-            self._restart()
+            self.close()
             return [function(job) for job in jobs]
 
     def close(self) -> None:
@@ -117,31 +116,41 @@ class ExecutorWorkers:
         """Suspects go alone; otherwise as many as keep the workers busy."""
         if suspects:
             if not running:
-                job = suspects.popleft()
-                running[self._submitted(job)] = job
+                self._begin(suspects.popleft(), running, suspects)
             return
         for job in islice(waiting, self.in_flight - len(running)):
-            running[self._submitted(job)] = job
+            if not self._begin(job, running, suspects):
+                return
 
-    def _submitted(self, job: Job) -> Future[Evaluation]:
+    def _begin(self, job: Job, running: dict[Future[Evaluation], Job], suspects: deque[Job]) -> bool:
+        """Submits a job; an executor that is found broken takes none, which is not the job's fault."""
+        try:
+            running[self._started().submit(self.evaluate, job)] = job
+        except self.lost:
+            suspects.append(job)
+            if not running:
+                self.close()
+                self._begin(suspects.pop(), running, suspects)
+            return False
+        return True
+
+    def _started(self) -> Executor:
         if self._executor is None:
             self._executor = self.start()
-        return self._executor.submit(self.evaluate, job)
+        return self._executor
 
-    def _broken(self, done: set[Future[Evaluation]]) -> bool:
-        return any(isinstance(future.exception(), BrokenProcessPool) for future in done if not future.cancelled())
-
-    def _restart(self) -> None:
-        self.close()
-
-    def _given_up(self, suspects: deque[Job]) -> Iterator[tuple[Job, Evaluation]]:
-        for _ in range(len(suspects)):
-            job = suspects.popleft()
+    def _judged(self, lost: list[Job], suspects: deque[Job]) -> Iterator[tuple[Job, Evaluation]]:
+        """Each lost job is tried again, or given up if it was at work too often when a worker died."""
+        for job in lost:
             self._losses[job.key] = self._losses.get(job.key, 0) + 1
             if self._losses[job.key] >= LOSSES_MAX:
                 yield job, Evaluation(failed_walk(job, WORKER_LOST, REMEDY), 0.0)
             else:
                 suspects.append(job)
+
+
+def _broken(future: Future[Evaluation]) -> bool:
+    return not future.cancelled() and isinstance(future.exception(), BrokenProcessPool)
 
 
 def local_workers(evaluate: Evaluate, number: int) -> ExecutorWorkers:

@@ -1,0 +1,240 @@
+"""The search driver on made-up walks: the same ranking for any workers, any interruption, any repeat."""
+
+from __future__ import annotations
+
+import csv
+import sqlite3
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+from search.fakes import by_formula, by_hash, dies_always, dies_once, slowly, task_of
+
+from gaitlab.errors import InputError
+from gaitlab.search.evaluate import WORKER_LOST, Evaluate, Evaluation, Job
+from gaitlab.search.ledger_file import LEDGER_FILE, created, reopened
+from gaitlab.search.ranking import Ranked, Ranking
+from gaitlab.search.ranking_table import write_ranking
+from gaitlab.search.run import SearchTask, Step, run_search
+from gaitlab.search.strategies.choice import STRATEGIES, StrategyChoice, strategy_of
+from gaitlab.search.workers import InProcess, Workers, local_workers
+from gaitlab.wiring.smooth import SmoothWaves
+
+ROW = task_of()
+WAVES = SmoothWaves.of(ROW.robot, ROW.space)
+
+
+def quiet(step: Step) -> None:
+    pass
+
+
+def searched(
+    folder: Path,
+    workers: Workers,
+    *,
+    task: SearchTask = ROW,
+    choice: StrategyChoice = StrategyChoice(),
+    resume: bool = False,
+) -> bytes:
+    """Runs a search into `folder` and gives back the bytes of its ranking."""
+    waves = SmoothWaves.of(task.robot, task.space)
+    opened = reopened if resume else created
+    with opened(folder / LEDGER_FILE, task.identity) as ledger:
+        run_search(task, strategy_of(choice, task.space, waves), ledger, workers, quiet)
+        workers.close()
+        ranking = Ranking(ledger, waves, task.objective, task.settings)
+        write_ranking(folder / "ranking.csv", ranking, task.objective)
+    return (folder / "ranking.csv").read_bytes()
+
+
+def places(folder: Path, task: SearchTask = ROW) -> list[Ranked]:
+    with reopened(folder / LEDGER_FILE, task.identity) as ledger:
+        return list(Ranking(ledger, SmoothWaves.of(task.robot, task.space), task.objective, task.settings))
+
+
+def test_every_distinct_wiring_is_walked_once_and_ranked_best_first(tmp_path: Path) -> None:
+    searched(tmp_path, InProcess(by_formula))
+    ranked = places(tmp_path)
+    assert [place.rank for place in ranked] == list(range(1, 25))
+    assert {place.wiring for place in ranked} == set(ROW.space)
+    travels = [place.walk.travel_m for place in ranked]
+    assert travels == sorted(travels, reverse=True)
+
+
+def test_each_wiring_stands_beside_its_reversed_wave(tmp_path: Path) -> None:
+    searched(tmp_path, InProcess(by_formula))
+    ranked = places(tmp_path)
+    by_wiring = {place.wiring: place for place in ranked}
+    for place in ranked:
+        assert place.reversed_wiring == ROW.space.reversed(place.wiring)
+        assert place.reversed_wiring is not None and place.reversed_walk is not None
+        assert by_wiring[place.reversed_wiring].rank == place.reversed_rank
+        assert by_wiring[place.reversed_wiring].walk.travel_m == place.reversed_walk.travel_m
+
+
+def test_both_smooth_waves_are_named(tmp_path: Path) -> None:
+    searched(tmp_path, InProcess(by_formula))
+    assert sorted(place.smooth for place in places(tmp_path)) == [-1] + [0] * 22 + [1]
+
+
+def test_ties_reach_as_far_as_the_scatters_together(tmp_path: Path) -> None:
+    """Scatters of 3 and 4 µm bridge 5 µm and no more."""
+    from search.fakes import walk_of
+
+    order = {wiring: n for n, wiring in enumerate(ROW.space)}
+
+    def stepped(job: Job) -> Evaluation:
+        n = order[job.wiring]
+        return Evaluation(walk_of(job, 0.01 - (0, 4.9e-6, 5.1e-6)[min(n, 2)], 3e-6 if n == 0 else 4e-6), 0.0)
+
+    searched(tmp_path, InProcess(stepped))
+    assert [place.tied_with_best for place in places(tmp_path)] == [True, True] + [False] * 22
+
+
+def test_failures_are_listed_by_name_and_take_no_place(tmp_path: Path) -> None:
+    task = task_of(6, 5, inlets_per_output_max=2)
+    searched(tmp_path, InProcess(by_hash), task=task)
+    with reopened(tmp_path / LEDGER_FILE, task.identity) as ledger:
+        ranking = Ranking(ledger, SmoothWaves.of(task.robot, task.space), "travel", task.settings)
+        ranked, failures = list(ranking), list(ranking.failures())
+        assert ranking.failed() == {"fell_over": len(failures)} and failures
+        assert ranking.evaluated() == len(ranked) + len(failures) == task.space.distinct
+        assert {p.wiring for p in ranked}.isdisjoint({f.wiring for f in failures})
+
+
+@pytest.mark.parametrize("objective", ["travel", "speed", "straight", "air"])
+def test_objectives_rank_one_ledger(tmp_path: Path, objective: str) -> None:
+    searched(tmp_path, InProcess(by_formula))
+    with reopened(tmp_path / LEDGER_FILE, ROW.identity) as ledger:
+        scores = [place.score.value for place in Ranking(ledger, WAVES, objective, ROW.settings)]
+    assert scores == sorted(scores, reverse=True) and len(scores) == 24
+
+
+@pytest.mark.parametrize("name", STRATEGIES)
+def test_contract_of_every_strategy(tmp_path: Path, name: str) -> None:
+    """Asks only for allowed representatives, repeats with its seed, stays near its budget, ends."""
+    task = task_of(6, 5, inlets_per_output_max=2)
+    choice = StrategyChoice(name, 40, 3)
+    first = searched(tmp_path / "a", InProcess(by_hash), task=task, choice=choice)
+    again = searched(tmp_path / "b", InProcess(by_hash), task=task, choice=choice)
+    assert first == again
+    with sqlite3.connect(tmp_path / "a" / LEDGER_FILE) as connection:
+        rows = connection.execute("SELECT wiring, level FROM walks").fetchall()
+    assert len(rows) == len(set(rows)) <= 40 + 5 + len(SmoothWaves.of(task.robot, task.space).wirings())
+    assert {wiring for wiring, _ in rows} <= {wiring.text() for wiring in task.space}
+
+
+@pytest.mark.parametrize("name", STRATEGIES)
+def test_same_bytes_for_one_and_two_workers(tmp_path: Path, name: str) -> None:
+    choice = StrategyChoice(name, 20, 1)
+    alone = searched(tmp_path / "a", InProcess(by_hash), choice=choice)
+    two = searched(tmp_path / "b", local_workers(by_hash, 2), choice=choice)
+    assert alone == two
+
+
+@pytest.mark.parametrize("name", STRATEGIES)
+def test_interrupted_and_resumed_gives_the_same_bytes(tmp_path: Path, name: str) -> None:
+    task, choice = task_of(6, 5, inlets_per_output_max=2), StrategyChoice(name, 40, 2)
+    whole = searched(tmp_path / "a", InProcess(by_hash), task=task, choice=choice)
+    searched(tmp_path / "b", InProcess(interrupting(by_hash, after=17)), task=task, choice=choice)
+    with sqlite3.connect(tmp_path / "b" / LEDGER_FILE) as connection:
+        assert connection.execute("SELECT count(*) FROM walks").fetchone() == (17,)
+    assert searched(tmp_path / "b", InProcess(by_hash), task=task, choice=choice, resume=True) == whole
+
+
+def interrupting(evaluate: Evaluate, *, after: int) -> Evaluate:
+    """Behaves as if Ctrl-C came after so many walks."""
+    left = [after]
+
+    def evaluated(job: Job) -> Evaluation:
+        if left[0] == 0:
+            raise KeyboardInterrupt
+        left[0] -= 1
+        return evaluate(job)
+
+    return evaluated
+
+
+def test_a_resumed_search_walks_nothing_twice(tmp_path: Path) -> None:
+    searched(tmp_path, InProcess(by_hash))
+
+    def never(job: Job) -> Evaluation:
+        raise AssertionError(f"{job.wiring.text()} was walked again")
+
+    searched(tmp_path, InProcess(never), resume=True)
+
+
+def test_two_searches_share_one_ledger(tmp_path: Path) -> None:
+    """Walks that the other search adds meanwhile are used, not doubled."""
+    walked: list[str] = []
+    with created(tmp_path / LEDGER_FILE, ROW.identity) as one, reopened(tmp_path / LEDGER_FILE, ROW.identity) as other:
+
+        def both(job: Job) -> Evaluation:
+            walked.append(job.wiring.text())
+            if len(walked) == 5:
+                run_search(ROW, strategy_of(StrategyChoice(), ROW.space, WAVES), other, InProcess(by_hash), quiet)
+            return by_hash(job)
+
+        run_search(ROW, strategy_of(StrategyChoice(), ROW.space, WAVES), one, InProcess(both), quiet)
+        assert one.number_of_walks() == 24
+    assert len(walked) == 5
+
+
+def test_a_dying_worker_costs_its_walk_only(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("GAITLAB_TEST_FLAG", str(tmp_path / "flag"))
+    whole = searched(tmp_path / "a", InProcess(by_hash))
+    assert searched(tmp_path / "b", local_workers(dies_once, 2)) == whole
+    assert (tmp_path / "flag").exists()
+
+
+def test_a_wiring_that_kills_every_worker_is_given_up_by_name(tmp_path: Path) -> None:
+    searched(tmp_path, local_workers(dies_always, 2))
+    with reopened(tmp_path / LEDGER_FILE, ROW.identity) as ledger:
+        lost = [row for row in Ranking(ledger, WAVES, "travel", ROW.settings).failures() if row.outcome == WORKER_LOST]
+        assert [failure.wiring.text() for failure in lost] == ["a=1 b=4 c=2 d=5 e=3"]
+        assert "--resume tries it again" in lost[0].remedy
+        assert ledger.number_of_walks() == 24
+
+
+def test_workers_end_with_their_search(tmp_path: Path) -> None:
+    workers = local_workers(slowly, 2)
+    with created(tmp_path / LEDGER_FILE, ROW.identity) as ledger:
+        run_search(ROW, strategy_of(StrategyChoice(budget=4), ROW.space, WAVES), ledger, workers, quiet)
+    processes = list(workers._executor._processes.values())  # type: ignore[union-attr]
+    workers.close()
+    assert processes and not any(process.is_alive() for process in processes)
+
+
+@pytest.mark.parametrize(
+    ("choice", "words"),
+    [
+        (StrategyChoice(budget=0), "budget must be at least 1 walk, got 0"),
+        (StrategyChoice("best"), "strategy must be one of"),
+    ],
+)
+def test_bad_choices_say_the_rule(choice: StrategyChoice, words: str) -> None:
+    with pytest.raises(InputError, match=words):
+        strategy_of(choice, ROW.space, WAVES)
+
+
+def test_ranking_file_has_one_line_per_wiring_and_no_times(tmp_path: Path) -> None:
+    searched(tmp_path, InProcess(by_formula))
+    with (tmp_path / "ranking.csv").open(newline="") as file:
+        lines = list(csv.DictReader(file))
+    assert len(lines) == 24
+    assert not any("wall" in name or "time" in name for name in lines[0])
+    assert {line["smooth"] for line in lines} == {"", "head to tail", "tail to head"}
+
+
+def recorded(log: list[Step]) -> Callable[[Step], None]:
+    return log.append
+
+
+def test_watch_hears_of_every_walk(tmp_path: Path) -> None:
+    heard: list[Step] = []
+    with created(tmp_path / LEDGER_FILE, ROW.identity) as ledger:
+        for _ in range(2):
+            run_search(
+                ROW, strategy_of(StrategyChoice(), ROW.space, WAVES), ledger, InProcess(by_hash), recorded(heard)
+            )
+    assert [step.known for step in heard] == [False] * 24 + [True] * 24
