@@ -1,0 +1,148 @@
+"""The same search on a real scheduler with two real workers on loopback, one of which is killed half-way."""
+
+from __future__ import annotations
+
+import os
+import signal
+import subprocess
+import sys
+import time
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+
+import pytest
+from search.fakes import by_hash, slowly, task_of
+from search.test_run import searched
+
+from gaitlab.errors import InputError
+from gaitlab.search import cluster
+from gaitlab.search.cluster import cluster_workers
+from gaitlab.search.workers import InProcess
+
+TESTS = Path(__file__).parents[1]
+
+
+@contextmanager
+def processes() -> Iterator[list[subprocess.Popen[bytes]]]:
+    """Processes to be ended, by their own ids, whatever happens."""
+    running: list[subprocess.Popen[bytes]] = []
+    try:
+        yield running
+    finally:
+        for process in reversed(running):
+            process.terminate()
+        for process in running:
+            try:
+                process.wait(10)
+            except subprocess.TimeoutExpired:
+                process.kill()
+                process.wait()
+
+
+def dask(folder: Path, *words: str) -> subprocess.Popen[bytes]:
+    environment = {**os.environ, "PYTHONPATH": os.pathsep.join([str(TESTS), str(TESTS.parent)])}
+    log = (folder / f"{words[0]}.log").open("ab")
+    return subprocess.Popen([sys.executable, "-m", "dask", *words], env=environment, cwd=folder, stdout=log, stderr=log)
+
+
+def address_in(file: Path) -> str:
+    import json
+
+    end = time.monotonic() + 60
+    while time.monotonic() < end:
+        if file.is_file() and file.read_text():
+            return str(json.loads(file.read_text())["address"])
+        time.sleep(0.1)
+    raise AssertionError("the scheduler did not come up")
+
+
+@contextmanager
+def running_cluster(folder: Path) -> Iterator[tuple[str, list[subprocess.Popen[bytes]]]]:
+    """A scheduler and two workers of one thread each; gives the address and the worker processes."""
+    scheduler_file = folder / "scheduler.json"
+    with processes() as running:
+        quiet = ("--no-dashboard",)
+        running.append(
+            dask(
+                folder,
+                "scheduler",
+                "--host",
+                "127.0.0.1",
+                "--port",
+                "0",
+                *quiet,
+                "--scheduler-file",
+                str(scheduler_file),
+            )
+        )
+        address = address_in(scheduler_file)
+        for _ in range(2):
+            options = ("--nthreads", "1", "--no-nanny", "--no-dashboard", "--local-directory", str(folder))
+            running.append(dask(folder, "worker", address, *options))
+        wait_for_workers(address, 2)
+        yield address, running[1:]
+
+
+def wait_for_workers(address: str, number: int) -> None:
+    import distributed
+
+    client = distributed.Client(address, timeout=30, set_as_default=False)
+    try:
+        client.wait_for_workers(number, timeout=60)
+    finally:
+        client.close()
+
+
+@pytest.mark.cluster
+def test_cluster_gives_the_same_bytes_though_a_worker_is_killed(tmp_path: Path) -> None:
+    task = task_of(6, 5, inlets_per_output_max=2)
+    whole = searched(tmp_path / "whole", InProcess(by_hash), task=task)
+    with running_cluster(tmp_path) as (address, workers):
+        remote = cluster_workers(slowly, address)
+        walks = []
+
+        def killing(jobs):  # type: ignore[no-untyped-def]
+            for job, done in evaluated(jobs):
+                walks.append(job)
+                if len(walks) == 60:
+                    os.kill(workers[0].pid, signal.SIGKILL)
+                yield job, done
+
+        evaluated = remote.evaluated
+        remote.evaluated = killing  # type: ignore[method-assign]
+        assert searched(tmp_path / "cluster", remote, task=task) == whole
+        assert workers[0].wait(10) == -signal.SIGKILL
+        assert workers[1].poll() is None
+
+
+@pytest.mark.cluster
+def test_workers_with_other_code_are_refused(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    with running_cluster(tmp_path) as (address, _):
+        monkeypatch.setattr(cluster, "code_version", OtherCode())
+        with pytest.raises(InputError, match="workers with this code"):
+            cluster_workers(by_hash, address)
+
+
+class OtherCode:
+    """Tells one version here and, sent to a worker, another."""
+
+    def __init__(self, version: str = "here") -> None:
+        self._version = version
+
+    def __call__(self) -> str:
+        return self._version
+
+    def __reduce__(self) -> tuple[type, tuple[str]]:
+        return OtherCode, ("there",)
+
+
+def test_an_address_nobody_answers_at_is_told(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(cluster, "CONNECT_S", 1.0)
+    with pytest.raises(InputError, match=r"--cluster must be the address of a scheduler that answers within 1 s, got"):
+        cluster_workers(by_hash, "tcp://127.0.0.1:9")
+
+
+def test_an_address_that_is_none_is_told() -> None:
+    with pytest.raises(InputError, match="--cluster must be the address"):
+        cluster_workers(by_hash, "nonsense://x:y")
