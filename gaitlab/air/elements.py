@@ -62,7 +62,7 @@ class FlowElements:
         """
         up, difference, ellipse, by_up, by_down = self._work[:5]
         np.subtract(p_a, p_b, difference)
-        np.maximum(p_a, p_b, up)
+        np.maximum(p_a, p_b, out=up)
         self._fill_ellipse(up, difference, ellipse, by_up, by_down)
         gain, slope = self._gain.value, self._gain.slope
         self._fill_gain(ellipse)
@@ -83,7 +83,7 @@ class FlowElements:
         ∂De/∂p_u = 2 z + 2 s + k² c′ with c′ = dc/dp_u.
         """
         drop, held, bent = self._work[5:8]
-        np.maximum(up, self._least_pressure, held)
+        np.maximum(up, self._least_pressure, out=held)
         np.log(held, bent)
         np.multiply(bent, self._pressure_scale, bent)
         np.add(bent, self._pressure_shift, bent)
@@ -91,7 +91,7 @@ class FlowElements:
         complement, slope = self._complement.value, self._complement.slope
         np.absolute(difference, drop)
         np.multiply(complement, up, ellipse)
-        np.minimum(drop, ellipse, drop)  # s
+        np.minimum(drop, ellipse, out=drop)  # s
         np.divide(drop, complement, complement)  # k
         np.add(up, up, by_up)
         np.subtract(by_up, complement, by_down)
@@ -107,11 +107,11 @@ class FlowElements:
     def _fill_gain(self, ellipse: FloatArray) -> None:
         """m/De in the gain table's value, dm/dDe in its slope."""
         position = self._work[7]
-        np.maximum(ellipse, self._least_ellipse, position)
+        np.maximum(ellipse, self._least_ellipse, out=position)
         np.log(position, position)
         np.multiply(position, self._flow_scale, position)
         np.add(position, self._flow_shift, position)
-        self._gain.look_up(np.maximum(position, 0.0, position))
+        self._gain.look_up(np.maximum(position, 0.0, out=position))
         value, slope = self._gain.value, self._gain.slope
         np.exp(value, value)
         np.multiply(slope, value, slope)

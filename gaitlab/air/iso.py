@@ -11,7 +11,7 @@ from gaitlab.robot.circuit import IsoPart
 
 # Reynolds number on the equivalent hole's diameter at which linear and square loss are equal. Real orifices leave the
 # square law between about 10 and 100; without a linear part the flow's slope at zero would be infinite. Chosen by us.
-LAMINAR_REYNOLDS = 15.0
+LAMINAR_REYNOLDS = 10.0
 # m √(R T0)/(A p0) of an ideal sonic nozzle, γ = 1.4 (White, Fluid Mechanics, eq. 9.46: 0.6847).
 NOZZLE_FLOW_FACTOR = math.sqrt(1.4) * 1.2**-3
 

@@ -53,7 +53,7 @@ class RowTable:
         """
         index, result, fraction = self._index, self._result, self._fraction
         first, second = self._halves
-        np.minimum(position, self._last, position)
+        np.minimum(position, self._last, out=position)
         np.copyto(index, position, casting="unsafe")
         np.subtract(position, index, first)
         second[:] = first
