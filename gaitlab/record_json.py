@@ -47,7 +47,7 @@ def record_from_json(kind: type[Record], data: Any, *, name: str = "record") -> 
     if not isinstance(data, dict):
         raise InputError(must(name, "a JSON object", type(data).__name__))
     fields = dataclasses.fields(typing.cast(Any, kind))
-    hints = _hints(kind)
+    hints = _hints(typing.cast(Any, kind))
     known = {f.name: _value(hints[f.name], data[f.name], f"{name}.{f.name}") for f in fields if f.name in data}
     needed = [f.name for f in fields if f.default is dataclasses.MISSING and f.default_factory is dataclasses.MISSING]
     missing = [key for key in needed if key not in known]
@@ -57,7 +57,7 @@ def record_from_json(kind: type[Record], data: Any, *, name: str = "record") -> 
 
 
 @cache
-def _hints(kind: type) -> dict[str, Any]:
+def _hints(kind: Any) -> dict[str, Any]:
     return typing.get_type_hints(kind)
 
 

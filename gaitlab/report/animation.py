@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import shutil
 import subprocess
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -13,19 +13,21 @@ from PIL import Image
 
 from gaitlab.errors import InputError, must
 from gaitlab.gait.records import Trace
-from gaitlab.report.body_view import draw_body, draw_feet
+from gaitlab.report.body_view import TRUNK, TRUNK_TOP, draw_body, draw_feet, faded, vacuum_colour
 from gaitlab.report.canvas import Canvas
 from gaitlab.report.moments import even_moments
 from gaitlab.report.ring_view import draw_ring
 from gaitlab.report.solids import Solid, solids_of
-from gaitlab.report.stage_set import COLUMN, RING, StageSet, Stretch, stage_set
-from gaitlab.report.style import BLUE, INK, MUTED, ORANGE
+from gaitlab.report.stage_set import COLUMN, RING, STEEL, STEEL_EDGE, TRAY, StageSet, Stretch, stage_set
+from gaitlab.report.style import AMBER, BLUE, INK, MUTED, ORANGE, RULE, rgb255
 from gaitlab.ring.waves import RingRun
 from gaitlab.wiring.wiring import Wiring
 
 PERIODS = 3
-FRAMES_PER_PERIOD = 24
-GIF_COLOURS = 96
+FRAME_S = 0.04  # GIF times are whole hundredths of a second; 25 pictures a second look smooth
+FRAMES_PER_PERIOD_LIMITS = (12, 50)
+VACUUM_SHADES = 80  # of the 256 colours of a GIF, chosen by us
+BLENDS = 20
 MM = 1e3
 TRAIL_PERIODS = 1.0
 
@@ -41,11 +43,7 @@ class Film:
     frames: tuple[int, ...]
     stage: StageSet
     full_Pa: float
-
-    @property
-    def frame_s(self) -> float:
-        """Time between two frames [s]."""
-        return float(self.trace.time_s[self.frames[1]] - self.trace.time_s[self.frames[0]])
+    frame_s: float
 
 
 def film_of(
@@ -55,18 +53,22 @@ def film_of(
     *,
     title: str,
     periods: int = PERIODS,
-    frames_per_period: int = FRAMES_PER_PERIOD,
+    frames_per_period: int | None = None,
 ) -> Film:
     """The last `periods` whole periods of the trace (fewer if it is shorter), `frames_per_period` pictures each.
 
+    Left out, as many as give about 25 pictures a second, within `FRAMES_PER_PERIOD_LIMITS`.
+
     Raises InputError when the trace holds less than one period or the counts are not above zero.
     """
-    frames = even_moments(trace, periods=periods, per_period=frames_per_period)
+    low, high = FRAMES_PER_PERIOD_LIMITS
+    per_period = frames_per_period or min(max(round(trace.period_s / FRAME_S), low), high)
+    frames = even_moments(trace, periods=periods, per_period=per_period)
     solids = solids_of(trace.parts)
     full = max(float(trace.vacuum_Pa.max()), float(ring.output_vacuum_Pa.max()), 1.0)
     stretch = Stretch.of(trace, solids, range(frames[0], frames[-1] + 1))
     stage = stage_set(stretch, title=title, subtitle=wiring.text(), full_Pa=full)
-    return Film(trace, ring, wiring, solids, frames, stage, full)
+    return Film(trace, ring, wiring, solids, frames, stage, full, trace.period_s / per_period)
 
 
 def painted(film: Film, index: int) -> Image.Image:
@@ -146,20 +148,25 @@ def write_gif(film: Film, path: str | Path) -> Path:
     """
     target = _named(path, ".gif")
     frames = [painted(film, index) for index in range(len(film.frames))]
-    palette = _palette(frames)
+    palette = _palette()
     indexed = [frame.quantize(palette=palette, dither=Image.Dither.NONE) for frame in frames]
     duration_ms = max(10 * round(100 * film.frame_s), 20)
     indexed[0].save(target, save_all=True, append_images=indexed[1:], duration=duration_ms, loop=0, optimize=False)
     return target
 
 
-def _palette(frames: Sequence[Image.Image]) -> Image.Image:
-    """One palette from a mosaic of a few frames, so that colours do not flicker."""
-    chosen = [frames[k] for k in sorted({0, len(frames) // 3, 2 * len(frames) // 3})]
-    mosaic = Image.new("RGB", (chosen[0].width, sum(image.height for image in chosen)))
-    for k, image in enumerate(chosen):
-        mosaic.paste(image, (0, k * image.height))
-    return mosaic.quantize(colors=GIF_COLOURS, method=Image.Quantize.MEDIANCUT)
+def _palette() -> Image.Image:
+    """The film's own colours and their blends into paper and ink: chosen, not guessed from a frame, so nothing flickers."""
+    scale = [vacuum_colour(k / (VACUUM_SHADES - 1), 1.0) for k in range(VACUUM_SHADES)]
+    colours = list(scale)
+    for colour in (INK, MUTED, BLUE, ORANGE, AMBER):
+        colours += [faded(colour, k / (BLENDS - 1)) for k in range(BLENDS)]
+    colours += [TRUNK, TRUNK_TOP, STEEL, STEEL_EDGE, TRAY, RULE]
+    colours += [faded(shade, 0.5) for shade in scale[VACUUM_SHADES // 2 :: 2]]
+    colours += [faded(shade, -0.25) for shade in scale[: VACUUM_SHADES // 2 : 2]]
+    image = Image.new("P", (1, 1))
+    image.putpalette([channel for colour in colours[:256] for channel in rgb255(colour)])
+    return image
 
 
 def write_mp4(film: Film, path: str | Path) -> Path:

@@ -52,7 +52,7 @@ def draw_body(
     ordered = sorted(placed, key=lambda item: _painting_order(item[0], camera.distance(item[1]), camera))
     depths = [camera.distance(points) for _, points in placed]
     near, far = min(depths), max(depths)
-    deep = camera.axis == 2 and far - near > 0.5 * float(np.ptp(trace.foot_m[frame, :, 1])) > 0.0
+    deep = camera.axis == 2 and float(np.ptp(trace.foot_m[frame, :, 1])) > 0.5 * (far - near)
     for solid, points in ordered:
         fade = FAR_FADE * (camera.distance(points) - near) / (far - near) if deep else 0.0
         _draw_solid(canvas, solid, points, camera, _fill(solid, trace, frame, full_Pa), fade)
@@ -65,7 +65,7 @@ def _painting_order(solid: Solid, distance_m: float, camera: Camera) -> tuple[bo
 
 def _world_points(solid: Solid, trace: Trace, frame: int) -> FloatArray:
     turned = rotated(solid.points_m, trace.quaternion[frame, solid.part])
-    return turned + trace.position_m[frame, solid.part]
+    return np.asarray(turned + trace.position_m[frame, solid.part])
 
 
 def _fill(solid: Solid, trace: Trace, frame: int, full_Pa: float) -> str:
@@ -97,9 +97,9 @@ def _outline(fill: str) -> str:
 
 
 def faded(colour: str, share: float) -> str:
-    """The colour moved towards the paper by a share of the way."""
-    a, b = np.array(to_rgb(colour)), np.array(to_rgb(PAPER))
-    return to_hex(a + share * (b - a))
+    """The colour moved towards the paper by a share of the way; a negative share moves it towards black."""
+    a, b = np.array(to_rgb(colour)), np.array(to_rgb(PAPER if share >= 0.0 else "#000000"))
+    return to_hex(a + abs(share) * (b - a))
 
 
 def draw_feet(canvas: Canvas, trace: Trace, *, frame: int, camera: Camera, radius_px: float) -> None:

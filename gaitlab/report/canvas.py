@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
+from typing import Any
 
 import matplotlib
 import numpy as np
@@ -104,8 +105,23 @@ class Canvas:
         halo: bool = False,
     ) -> None:
         """Words at a point; `anchor` as Pillow has it (lm: left middle, mm: centred, rm: right middle …)."""
-        rim = {"stroke_width": 2 * OVERSAMPLING, "stroke_fill": rgb255(PAPER)} if halo else {}
+        rim: dict[str, Any] = {"stroke_width": 2 * OVERSAMPLING, "stroke_fill": rgb255(PAPER)} if halo else {}
         self.pen.text(_scaled(at), words, font=_font(size, bold), fill=rgb255(colour), anchor=anchor, **rim)
+
+
+def text_width(words: str, size: float, *, bold: bool = False) -> float:
+    """Width of words [px of the finished picture]."""
+    return float(_font(size, bold).getlength(words)) / OVERSAMPLING
+
+
+def fitted(words: str, width: float, *, size: float, least: float) -> tuple[str, float]:
+    """The words and the size at which they are no wider than `width`: smaller first, down to `least`, then cut short."""
+    room = size * width / max(text_width(words, size), 1.0)
+    if room >= least:
+        return words, min(size, room)
+    while len(words) > 1 and text_width(words + "…", least) > width:
+        words = words[:-1]
+    return words.rstrip() + "…", least
 
 
 def _scaled(point: FloatArray | Point) -> Point:

@@ -80,7 +80,7 @@ def _ring_data(ring: RingRun, wiring: Wiring) -> dict[str, Any]:
 def _thinned(row: NDArray[np.float64]) -> NDArray[np.float64]:
     """One period at `WAVE_POINTS` even phases."""
     grid = np.arange(WAVE_POINTS) / WAVE_POINTS * len(row)
-    return np.interp(grid, np.arange(len(row) + 1), np.append(row, row[0]))
+    return np.asarray(np.interp(grid, np.arange(len(row) + 1), np.append(row, row[0])))
 
 
 def _motion(trace: Trace) -> dict[str, Any] | None:
@@ -96,7 +96,6 @@ def _motion(trace: Trace) -> dict[str, Any] | None:
             {
                 "kind": part.kind,
                 "size": _list(np.array(part.size_m) * 1e3, 3),
-                "offset": _list(np.array(part.offset_m) * 1e3, 3),
                 "inlet": trace.inlets.index(part.inlet) if part.inlet in trace.inlets else None,
             }
             for part in trace.parts
@@ -124,7 +123,7 @@ def _whole(values: NDArray[np.float64], unit: float) -> list[int]:
 
 
 def _list(values: NDArray[np.float64], digits: int) -> list[float]:
-    return np.round(np.asarray(values, dtype=float), digits).tolist()
+    return [float(value) for value in np.round(np.asarray(values, dtype=float), digits)]
 
 
 def _rounded(value: float, digits: int = 2) -> float | None:

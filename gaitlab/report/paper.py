@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
+from typing import Any
 
 import matplotlib
 from matplotlib.axes import Axes
@@ -112,14 +113,12 @@ class Paper:
         self, x: float, y: float, width: float, height: float, *, fill: str, edge: str = MUTED, radius: float = 0.0
     ) -> None:
         """A filled box behind the text, with rounded corners if asked."""
+        look: dict[str, Any] = {"facecolor": fill, "edgecolor": edge, "lw": 0.8, "zorder": 0}
         if radius:
-            style = f"round,pad=0,rounding_size={radius}"
-            patch = FancyBboxPatch(
-                (x, y), width, height, boxstyle=style, facecolor=fill, edgecolor=edge, lw=0.8, zorder=0
-            )
+            round_box = f"round,pad=0,rounding_size={radius}"
+            self.ground.add_patch(FancyBboxPatch((x, y), width, height, boxstyle=round_box, **look))
         else:
-            patch = Rectangle((x, y), width, height, facecolor=fill, edgecolor=edge, lw=0.6, zorder=0)
-        self.ground.add_patch(patch)
+            self.ground.add_patch(Rectangle((x, y), width, height, **look))
 
     def inset(self, x: float, y: float, width: float, height: float) -> Axes:
         """Axes that fill a place on the page."""

@@ -8,9 +8,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from gaitlab.report.body_view import vacuum_colour
-from gaitlab.report.canvas import Canvas, Point
+from gaitlab.report.canvas import Canvas, Point, text_width
 from gaitlab.report.signal import signal_path
-from gaitlab.report.style import AMBER, INK, MUTED, ORANGE, PAPER, RULE
+from gaitlab.report.style import AMBER, INK, MUTED, ORANGE, PAPER
 from gaitlab.ring.waves import RingRun
 from gaitlab.wiring.wiring import Wiring
 
@@ -23,6 +23,7 @@ class RingPlace:
 
     centre: Point
     radius: float
+    reach: Point  # names stay between these, left and right
 
     def point(self, position: float, stages: int, *, radius: float | None = None) -> Point:
         """The place of a position counted in stages from 0: stage 1 at the top, numbers rising clockwise."""
@@ -90,12 +91,14 @@ def _draw_inlets(
     if not inlets:
         return
     start, end = (place.point(stage, stages, radius=place.radius + reach) for reach in (node, node + 9.0))
-    canvas.line([start, end], colour=RULE if not inlets else INK, width=2.0)
+    canvas.line([start, end], colour=INK, width=2.0)
     x, y = place.point(stage, stages, radius=place.radius + node + 13.0)
-    lean = x - place.centre[0]
-    anchor = "mm" if abs(lean) < 0.35 * place.radius else ("lm" if lean > 0 else "rm")
-    shift = 0.0 if anchor != "mm" else (-5.0 if y < place.centre[1] else 5.0)
-    canvas.text((x, y + shift), _short(inlets), size=11.0, anchor=anchor, bold=True)
+    words = _short(inlets)
+    half, lean = 0.5 * text_width(words, 11.0, bold=True), (x - place.centre[0]) / place.radius
+    x += half * min(max(2.0 * lean, -1.0), 1.0)
+    x = min(max(x, place.reach[0] + half), place.reach[1] - half)
+    sideways = 5.0 * (1.0 - min(abs(lean), 1.0))
+    canvas.text((x, y + (sideways if y > place.centre[1] else -sideways)), words, size=11.0, anchor="mm", bold=True)
 
 
 def _short(inlets: tuple[str, ...]) -> str:

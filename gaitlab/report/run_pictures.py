@@ -9,6 +9,7 @@ from pathlib import Path
 from matplotlib.figure import Figure
 
 from gaitlab.errors import GaitlabError
+from gaitlab.gait.records import Trace
 from gaitlab.report.animation import film_of, write_gif
 from gaitlab.report.body_path import body_path
 from gaitlab.report.footfall import footfall_chart
@@ -17,6 +18,8 @@ from gaitlab.report.ranking_plot import ranking_bars
 from gaitlab.report.run_folder import SavedRun, read_run
 from gaitlab.report.spread_plots import sensitivity_bars, spread_plot
 from gaitlab.report.style import save_figure
+from gaitlab.ring.waves import RingRun
+from gaitlab.wiring.wiring import Wiring
 
 
 @dataclass(frozen=True)
@@ -66,15 +69,16 @@ def _figures(run: SavedRun) -> dict[str, Figure]:
 
 
 def _films(run: SavedRun) -> dict[str, Callable[[Path], Path]]:
-    films: dict[str, Callable[[Path], Path]] = {}
-    if run.trace is not None:
-        films["best"] = lambda path: write_gif(
-            film_of(run.trace, run.ring, run.best.wiring, title=run.robot.name), path
-        )
-    wiring = run.best.reversed_wiring
-    if run.reversed_trace is not None and run.reversed_ring is not None and wiring is not None:
-        title = f"{run.robot.name}, wave reversed"
-        films["reversed"] = lambda path: write_gif(
-            film_of(run.reversed_trace, run.reversed_ring, wiring, title=title), path
-        )
-    return films
+    films = {"best": _film_writer(run.trace, run.ring, run.best.wiring, run.robot.name)}
+    title = f"{run.robot.name}, wave reversed"
+    films["reversed"] = _film_writer(run.reversed_trace, run.reversed_ring, run.best.reversed_wiring, title)
+    return {name: write for name, write in films.items() if write is not None}
+
+
+def _film_writer(
+    trace: Trace | None, ring: RingRun | None, wiring: Wiring | None, title: str
+) -> Callable[[Path], Path] | None:
+    """What writes the film to a path; None where something it needs was not saved."""
+    if trace is None or ring is None or wiring is None:
+        return None
+    return lambda path: write_gif(film_of(trace, ring, wiring, title=title), path)

@@ -21,7 +21,7 @@ NECK = 0.80  # radius of a rib's flat faces over its rim
 
 @dataclass(frozen=True)
 class Solid:
-    """One thing to draw, in its part's frame: its outline points (n, 3), or a ball of `radius_m` round a single point."""
+    """One thing to draw, about its part's centre: its outline points (n, 3), or a ball of `radius_m` round a single point."""
 
     part: int
     kind: str  # box | rib | ball
@@ -34,21 +34,18 @@ def solids_of(parts: tuple[Part, ...]) -> tuple[Solid, ...]:
     """The solids of every part, in the parts' order."""
     found: list[Solid] = []
     for index, part in enumerate(parts):
-        offset = np.asarray(part.offset_m)
         if part.kind == "box":
-            found.append(Solid(index, "box", _corners(part.size_m) + offset, 0.0, part.inlet))
+            found.append(Solid(index, "box", _corners(part.size_m), 0.0, part.inlet))
         elif part.kind == "sphere":
-            found.append(Solid(index, "ball", offset[None, :], part.size_m[0], part.inlet))
+            found.append(Solid(index, "ball", np.zeros((1, 3)), part.size_m[0], part.inlet))
         else:
-            found += [
-                Solid(index, "rib", rib + offset, 0.0, part.inlet) for rib in _ribs(part.size_m[0], part.size_m[1])
-            ]
+            found += [Solid(index, "rib", rib, 0.0, part.inlet) for rib in _ribs(part.size_m[0], part.size_m[1])]
     return tuple(found)
 
 
 def _corners(size_m: tuple[float, float, float]) -> FloatArray:
     signs = np.array([[x, y, z] for x in (-1, 1) for y in (-1, 1) for z in (-1, 1)])
-    return 0.5 * signs * np.asarray(size_m)
+    return np.asarray(0.5 * signs * np.asarray(size_m))
 
 
 def _ribs(radius_m: float, length_m: float) -> list[FloatArray]:
@@ -70,4 +67,4 @@ def rotated(points_m: FloatArray, quaternion: FloatArray) -> FloatArray:
     """Points (n, 3) turned by a quaternion (x y z w): v + 2w (q × v) + 2 q × (q × v)."""
     axis, real = quaternion[:3], quaternion[3]
     across = np.cross(axis, points_m)
-    return points_m + 2.0 * real * across + 2.0 * np.cross(axis, across)
+    return np.asarray(points_m + 2.0 * real * across + 2.0 * np.cross(axis, across))

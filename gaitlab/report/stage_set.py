@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from gaitlab.gait.records import Trace
 from gaitlab.report.body_view import SWING_FOOT, Camera, vacuum_colour
-from gaitlab.report.canvas import Canvas, Point
+from gaitlab.report.canvas import Canvas, Point, fitted
 from gaitlab.report.ring_view import RingPlace
 from gaitlab.report.solids import Solid, rotated
 from gaitlab.report.style import INK, MUTED, ORANGE, PAPER, RULE
@@ -18,7 +18,7 @@ FloatArray = NDArray[np.float64]
 WIDTH, HEIGHT = 840, 440
 VIEW_LEFT, VIEW_RIGHT = 18.0, 580.0
 COLUMN = (612.0, 822.0)
-RING = RingPlace((717.0, 142.0), 62.0)
+RING = RingPlace((717.0, 142.0), 58.0, (602.0, 834.0))
 STEEL, STEEL_EDGE, TRAY = "#e3e7ea", "#9aa5ae", "#f2f4f5"
 MARGIN_M = np.array([0.008, 0.008, 0.006])
 VIEWS_PX = 276.0  # height that both views share
@@ -69,8 +69,9 @@ def stage_set(stretch: Stretch, *, title: str, subtitle: str, full_Pa: float) ->
     side = Camera(2, scale, float(stretch.low_m[0]), 0.0, left, floor)
     above = Camera(1, scale, float(stretch.low_m[0]), float(stretch.high_m[1]), left, below)
     canvas = Canvas.blank(WIDTH, HEIGHT, PAPER)
-    canvas.text((VIEW_LEFT, 20), title, size=15, bold=True)
-    canvas.text((VIEW_LEFT, 39), subtitle, size=10.5, colour=MUTED)
+    for words, y, size, bold in ((title, 20.0, 15.0, True), (subtitle, 39.0, 10.5, False)):
+        shown, fitting = fitted(words, 0.86 * (VIEW_RIGHT - VIEW_LEFT), size=size, least=8.5)
+        canvas.text((VIEW_LEFT, y), shown, size=fitting, bold=bold, colour=INK if bold else MUTED)
     _draw_floor(canvas, side, stretch)
     _draw_tray(canvas, above, stretch)
     _draw_column(canvas, full_Pa)

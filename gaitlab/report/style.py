@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import io
 from pathlib import Path
-from typing import Any
+from typing import Any, Literal
 
 import matplotlib
 from matplotlib.axes import Axes
@@ -35,7 +35,7 @@ SERIES = (BLUE, ORANGE, GREEN, PINK, AMBER, SKY)
 VACUUM_STOPS = ("#f6f3ea", "#b5d0d2", "#6e9fb5", "#2f6690", "#12304f")
 MM_PER_INCH = 25.4
 
-RC: dict[str, Any] = {
+RC: Any = {
     "font.family": "DejaVu Sans",
     "font.size": 9,
     "axes.edgecolor": MUTED,
@@ -95,7 +95,7 @@ def styled() -> Any:
     return matplotlib.rc_context(RC)
 
 
-def bare(axes: Axes, *, grid: str = "") -> Axes:
+def bare(axes: Axes, *, grid: Literal["x", "y", "both"] | None = None) -> Axes:
     """Quiet the frame of `axes`; `grid` is x, y or both for light rules behind the data."""
     axes.set_axisbelow(True)
     axes.tick_params(length=3, width=0.8)

@@ -30,7 +30,16 @@ def draw_tube_plan(ax: Axes, robot: Robot, wiring: Wiring) -> None:
     _draw_ring(ax, ring, PORT_RADIUS * reach, ports)
     for inlet, place in _spread_names(inlets, reach):
         ax.plot(*inlets[inlet], marker="o", ms=5, mfc=BLUE, mec=INK, mew=0.6)
-        ax.text(*place, inlet, ha="center", va="center", fontsize=7.5, fontweight="bold", color=INK)
+        ax.text(
+            float(place[0]),
+            float(place[1]),
+            inlet,
+            ha="center",
+            va="center",
+            fontsize=7.5,
+            fontweight="bold",
+            color=INK,
+        )
     ax.set_aspect("equal")
     ax.margins(0.06)
     ax.set_xlabel("forward x (mm)", fontsize=7)
@@ -78,7 +87,15 @@ def _draw_ring(ax: Axes, centre: np.ndarray, radius: float, ports: list[np.ndarr
     small = 7.0 if len(ports) <= 9 else 5.0
     for k, place in enumerate(ports):
         ax.plot(*place, marker="o", ms=1.35 * small, mfc=PAPER, mec=INK, mew=1.0)
-        ax.text(*place, str(k + 1), ha="center", va="center", fontsize=0.85 * small, fontweight="bold")
+        ax.text(
+            float(place[0]),
+            float(place[1]),
+            str(k + 1),
+            ha="center",
+            va="center",
+            fontsize=0.85 * small,
+            fontweight="bold",
+        )
     for k in range(len(ports)):
         turn_back = 2 * np.pi * (k + 0.5) / len(ports)
         at = centre + radius * np.array([np.sin(turn_back), np.cos(turn_back)])

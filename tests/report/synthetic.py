@@ -23,6 +23,7 @@ PERIOD_S = 0.9
 SWING_PA = 42e3
 SEGMENTS = 4
 SEGMENT_M = 0.008
+SIDE_M = np.array((0.0, 0.015, 0.0))
 
 
 def wave(phase: np.ndarray) -> np.ndarray:
@@ -100,7 +101,7 @@ def _parts() -> tuple[Part, ...]:
         for k in range(SEGMENTS):
             parts.append(Part(f"{leg}.{k + 1}", "capsule", (0.006, SEGMENT_M, 0.0), (0.0, 0.0, 0.0), leg, leg))
         for side in (-0.015, 0.015):
-            parts.append(Part(f"{leg}.foot", "sphere", (0.004, 0.0, 0.0), (0.0, side, 0.0), None, leg))
+            parts.append(Part(f"{leg}.foot", "sphere", (0.004, 0.0, 0.0), (0.0, side, -SEGMENT_M), None, leg))
     return tuple(parts)
 
 
@@ -129,7 +130,7 @@ def trace(wiring: Wiring, *, periods: int = 4, hz: float = 60.0, travel_m: float
         for i in range(len(LEGS)):
             root = trunk + np.array([0.068 - 0.034 * i, 0.0, -0.006])
             leg_centres, leg_turns, tip = _leg_poses(0.9 * unit[k, i], root)
-            centres += [*leg_centres, tip, tip]
+            centres += [*leg_centres, tip - SIDE_M, tip + SIDE_M]
             turns += [*leg_turns, leg_turns[-1], leg_turns[-1]]
             tips.append(tip)
         position.append(centres)

@@ -4,17 +4,16 @@ const RIB_PITCH_MM = 4.2, RIB_CORNERS = 10, NECK = 0.8;
 function solidsOf(parts) {
   const solids = [];
   parts.forEach((part, index) => {
-    const at = p => [p[0] + part.offset[0], p[1] + part.offset[1], p[2] + part.offset[2]];
     if (part.kind === "box") {
       const corners = [];
       for (const x of [-0.5, 0.5]) for (const y of [-0.5, 0.5]) for (const z of [-0.5, 0.5])
-        corners.push(at([x * part.size[0], y * part.size[1], z * part.size[2]]));
+        corners.push([x * part.size[0], y * part.size[1], z * part.size[2]]);
       solids.push({ part: index, kind: "box", points: corners, radius: 0, inlet: part.inlet });
     } else if (part.kind === "sphere") {
-      solids.push({ part: index, kind: "ball", points: [at([0, 0, 0])], radius: part.size[0], inlet: part.inlet });
+      solids.push({ part: index, kind: "ball", points: [[0, 0, 0]], radius: part.size[0], inlet: part.inlet });
     } else {
       for (const rib of ribs(part.size[0], part.size[1]))
-        solids.push({ part: index, kind: "rib", points: rib.map(at), radius: 0, inlet: part.inlet });
+        solids.push({ part: index, kind: "rib", points: rib, radius: 0, inlet: part.inlet });
     }
   });
   return solids;
