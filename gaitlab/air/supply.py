@@ -126,7 +126,7 @@ def _table_law(table: PumpTable, gas: Gas) -> PumpTableLaw:
     vacuums, flows = table.table_vacuum_Pa, table.table_flow_m3_s
     _check_rising("table_vacuum", vacuums)
     _check_paired("table_vacuum", vacuums, "table_flow", flows)
-    if any(later >= earlier for earlier, later in pairwise(flows)) or flows[-1] != 0.0:
+    if any(not later < earlier for earlier, later in pairwise(flows)) or flows[-1] != 0.0:
         raise InputError(must("table_flow", "falling all the way and ending at 0", flows, "add the dead-end point"))
     curve = PchipInterpolator(vacuums, DENSITY_ANR_KG_M3 * np.asarray(flows))
     rest = _rest(vacuums[-1], "table_vacuum", gas)
@@ -141,7 +141,7 @@ def _rest(vacuum_Pa: float, name: str, gas: Gas) -> float:
 
 
 def _check_rising(name: str, values: tuple[float, ...]) -> None:
-    if len(values) < 2 or any(later <= earlier for earlier, later in pairwise(values)):
+    if len(values) < 2 or any(not later > earlier for earlier, later in pairwise(values)):
         raise InputError(must(name, "at least two values, each above the one before", values, "sort the points"))
 
 

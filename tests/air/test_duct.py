@@ -17,7 +17,7 @@ from gaitlab.air.fanno import duct_flow, exit_mach, exit_ratio, fanno_number, ma
 from gaitlab.air.section import section_of
 from gaitlab.errors import InputError
 from gaitlab.robot.circuit import FlowPart, RoundDuct, SquareDuct
-from tests.air.parts import ATMOSPHERE_Pa, GAS, PARTS
+from tests.air.parts import GAS, PARTS, ATMOSPHERE_Pa
 
 
 @pytest.mark.parametrize(

@@ -12,7 +12,7 @@ from gaitlab.air.duct import exact_mass_flow
 from gaitlab.air.elements import FlowElements
 from gaitlab.air.tables import ELLIPSE_KNOTS
 from gaitlab.errors import InputError
-from tests.air.parts import ATMOSPHERE_Pa, GAS, PARTS
+from tests.air.parts import GAS, PARTS, ATMOSPHERE_Pa
 from tests.air.test_duct import COMPUTED_MG_S, DROPS_KPA
 
 NAMES = tuple(PARTS)
