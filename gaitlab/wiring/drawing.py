@@ -2,49 +2,79 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass, field
 from fractions import Fraction
 
 import numpy as np
 
 from gaitlab.wiring.constraints import Constraints
-from gaitlab.wiring.counting import Rules, fillings
+from gaitlab.wiring.counting import Fillings, Rules, fillings
+
+EXACT_IN_FLOATS = 2**53
+Left = tuple[int, ...]
+Choices = tuple[tuple[tuple[Left, int], ...], int]  # what an output may take, with the ways each leaves, and their sum
 
 
-def drawn(constraints: Constraints, rules: Rules, still: tuple[int, ...], rng: np.random.Generator) -> tuple[int, ...]:
-    """Source numbers of one wiring: output after output takes a number of groups with the weight of what that leaves open.
+@dataclass
+class Urn:
+    """All wirings under one set of constraints, ready to draw from: output after output takes a number of groups of every size
+    with the weight of what that leaves open, then the groups themselves."""
 
-    Raises ValueError when there is no wiring to draw.
-    """
-    table = fillings(constraints, rules)
-    if table is None or table[0].ways(0, table[1]) == 0:
-        raise ValueError("no wiring keeps these limits")
-    ways, left = table
-    groups, decided = constraints.groups(), constraints.decided() or {}
-    source_of_group = dict(decided)
-    pools = {
-        size: [g for g, group in enumerate(groups) if len(group) == size and g not in decided] for size in ways.sizes
-    }
-    for output in range(rules.stages):
-        taken = _picked(list(ways.choices(output, left)), rng)
-        left = tuple(n - t for n, t in zip(left, taken, strict=True))
-        for size, number in zip(ways.sizes, taken, strict=True):
-            for _ in range(number):
-                source_of_group[_popped(pools[size], rng)] = output + 1
-    for group in sorted(g for pool in pools.values() for g in pool):
-        source_of_group[group] = still[int(rng.integers(len(still)))]
-    position = {inlet: g for g, group in enumerate(groups) for inlet in group}
-    return tuple(source_of_group[position[inlet]] for inlet in range(constraints.inlets))
+    table: Fillings
+    left: Left
+    groups: tuple[tuple[int, ...], ...]
+    decided: dict[int, int]
+    still: tuple[int, ...]
+    _known: dict[tuple[int, Left], Choices] = field(default_factory=dict)
 
+    @classmethod
+    def of(cls, constraints: Constraints, rules: Rules, still: tuple[int, ...]) -> Urn:
+        """The urn of all wirings under these limits. Raises ValueError when there is none."""
+        table = fillings(constraints, rules)
+        if table is None or table[0].ways(0, table[1]) == 0:
+            raise ValueError("no wiring keeps these limits")
+        return cls(*table, constraints.groups(), constraints.decided() or {}, still)
 
-def _picked(choices: list[tuple[tuple[int, ...], int]], rng: np.random.Generator) -> tuple[int, ...]:
-    """One choice by its weight; the weights may be too large for floats."""
-    total = sum(ways for _, ways in choices)
-    shot = Fraction(float(rng.random())) * total
-    for taken, ways in choices:
-        shot -= ways
-        if shot < 0:
-            return taken
-    return choices[-1][0]
+    def drawn(self, rng: np.random.Generator) -> tuple[int, ...]:
+        """Source numbers of one wiring."""
+        sources = dict(self.decided)
+        free = [g for g in range(len(self.groups)) if g not in self.decided]
+        pools = {size: [g for g in free if len(self.groups[g]) == size] for size in self.table.sizes}
+        left = self.left
+        for output in range(self.table.rules.stages):
+            taken = self._taken(output, left, rng)
+            left = tuple(n - t for n, t in zip(left, taken, strict=True))
+            for size, number in zip(self.table.sizes, taken, strict=True):
+                for _ in range(number):
+                    sources[_popped(pools[size], rng)] = output + 1
+        for group in sorted(g for pool in pools.values() for g in pool):
+            sources[group] = self.still[int(rng.integers(len(self.still)))]
+        return self._numbers(sources)
+
+    def _numbers(self, sources: dict[int, int]) -> tuple[int, ...]:
+        numbers = [0] * sum(len(group) for group in self.groups)
+        for position, group in enumerate(self.groups):
+            for inlet in group:
+                numbers[inlet] = sources[position]
+        return tuple(numbers)
+
+    def _taken(self, output: int, left: Left, rng: np.random.Generator) -> Left:
+        choices, total = self._choices(output, left)
+        if len(choices) == 1:
+            return choices[0][0]
+        shot = rng.random() * total if total < EXACT_IN_FLOATS else Fraction(float(rng.random())) * total
+        for taken, ways in choices:
+            shot -= ways
+            if shot < 0:
+                return taken
+        return choices[-1][0]
+
+    def _choices(self, output: int, left: Left) -> Choices:
+        key = (output, left)
+        if key not in self._known:
+            choices = tuple((taken, ways) for taken, ways in self.table.choices(output, left) if ways)
+            self._known[key] = (choices, sum(ways for _, ways in choices))
+        return self._known[key]
 
 
 def _popped(pool: list[int], rng: np.random.Generator) -> int:

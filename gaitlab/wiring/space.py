@@ -13,7 +13,7 @@ from gaitlab.errors import InputError, must
 from gaitlab.robot.records import Robot
 from gaitlab.wiring.constraints import Constraints, turned_source
 from gaitlab.wiring.counting import Rules, count, count_distinct
-from gaitlab.wiring.drawing import drawn
+from gaitlab.wiring.drawing import Urn
 from gaitlab.wiring.enumeration import representatives
 from gaitlab.wiring.limits import (
     constraints_of,
@@ -183,7 +183,11 @@ class WiringSpace:
 
     def sampled(self, rng: np.random.Generator) -> Wiring:
         """The representative of one wiring drawn evenly from all allowed ones."""
-        return self.wiring(self.canonical_numbers(drawn(self.constraints, self.rules, self.still, rng)))
+        return self.wiring(self.canonical_numbers(self._urn.drawn(rng)))
+
+    @cached_property
+    def _urn(self) -> Urn:
+        return Urn.of(self.constraints, self.rules, self.still)
 
 
 def _with_sources(numbers: Numbers, changes: tuple[tuple[Numbers, int], ...]) -> Numbers:
