@@ -32,13 +32,13 @@ class BulletEngine:
         check_step(model, step_s=settings.step_s, inertia_factor=settings.inertia_factor)
         self.model = model
         self.settings = settings
-        self.drive = Drive.of(model, step_s=settings.step_s, inertia_factor=settings.inertia_factor)
+        self.drive = Drive(model, step_s=settings.step_s, inertia_factor=settings.inertia_factor)
         self._client = pybullet.connect(pybullet.DIRECT)
         _set_physics(self._client, model, settings)
         self._plane = _plane(self._client, model)
         self._body = _multibody(self._client, model, settings)
         self._joints = list(range(len(model.joints)))
-        self._feet = BulletFeet(self._client, self._body, self._plane, model)
+        self._feet = BulletFeet(self._client, self._body, self._plane, model, settings)
 
     def joint_state(self) -> FloatArray:
         """Joint positions and speeds, shape (J, 2)."""

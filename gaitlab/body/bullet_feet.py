@@ -8,22 +8,20 @@ import numpy as np
 import pybullet
 from numpy.typing import NDArray
 
-from gaitlab.body.bristle import bristle_friction
-from gaitlab.body.engine import FeetState
+from gaitlab.body.bristle import Bristles
+from gaitlab.body.engine import EngineSettings, FeetState
 from gaitlab.body.records import BodyModel
 from gaitlab.body.rotation import cross, rotated
 
 FloatArray = NDArray[np.float64]
 Contact = tuple[Any, ...]  # as getContactPoints gives it
 LINK, PLACE, NORMAL_N, FRICTION = 3, 5, 9, (10, 12)  # indices into it; each friction force is followed by its direction
-# A foot keeps its friction until it is off by this share, which saves calls (chosen by us).
-FRICTION_STEP = 1e-4
 
 
 class BulletFeet:
     """Reads (and, where they have bristles, combs) the feet of one body in one client."""
 
-    def __init__(self, client: int, body: int, plane: int, model: BodyModel) -> None:
+    def __init__(self, client: int, body: int, plane: int, model: BodyModel, settings: EngineSettings) -> None:
         self._client, self._body, self._plane = client, body, plane
         self._feet = model.feet
         self._links = [foot.link for foot in model.feet]
@@ -33,8 +31,10 @@ class BulletFeet:
         self._owners: dict[int, list[int]] = {}
         for index, foot in enumerate(model.feet):
             self._owners.setdefault(foot.link - 1, []).append(index)
-        self._bristles = [index for index, foot in enumerate(model.feet) if foot.bristle]
+        self._bristles = Bristles(model, step_s=settings.step_s, inertia_factor=settings.inertia_factor)
+        self._ground_friction = model.ground_friction
         self._friction = [foot.friction[0] for foot in model.feet]
+        self._down = np.array([(0.0, 0.0, foot.radius_m) for foot in model.feet])
 
     def state(self) -> FeetState:
         """Places, speeds and loads."""
@@ -45,26 +45,32 @@ class BulletFeet:
         return FeetState(place, velocity, turn, spin, loads)
 
     def comb(self) -> None:
-        """Give every bristle foot the friction of the way it tends to slide, read from the force that holds it now."""
-        if not self._bristles:
+        """Give every bristle foot the friction of the way it slides or tends to slide, and its force across."""
+        feet = self._bristles.feet
+        if not feet:
             return
+        com, turn, origin, speed, spin = (column[feet] for column in self._links_motion())
+        sole = origin + rotated(turn, self._middles[feet]) - self._down[feet]
         contacts = self._contacts()
-        for index in self._bristles:
-            if contacts[index]:
-                foot = self._feet[index]
-                friction = bristle_friction(foot.friction, _sliding(contacts[index]), self._forward(foot.link))
-                self._set_friction(index, friction)
+        force = np.array([_force(contacts[index]) for index in feet])
+        forward = rotated(turn, np.tile((1.0, 0.0, 0.0), (len(feet), 1)))
+        along, across = self._bristles.combed(forward, speed + cross(spin, sole - com), force)
+        for row, index in enumerate(feet):
+            self._set_friction(index, float(along[row]) / self._ground_friction)
+            self._push(self._links[index], across[row], sole[row])
+
+    def _push(self, link: int, across_N: FloatArray, place: FloatArray) -> None:
+        """Load a force in the plane for the next step."""
+        force = [float(across_N[0]), float(across_N[1]), 0.0]
+        pybullet.applyExternalForce(
+            self._body, link - 1, force, place.tolist(), pybullet.WORLD_FRAME, physicsClientId=self._client
+        )
 
     def _set_friction(self, index: int, friction: float) -> None:
-        if abs(friction - self._friction[index]) > FRICTION_STEP * friction:
+        if friction != self._friction[index]:
             self._friction[index] = friction
             link = self._feet[index].link - 1
             pybullet.changeDynamics(self._body, link, lateralFriction=friction, physicsClientId=self._client)
-
-    def _forward(self, link: int) -> tuple[float, float]:
-        """The foot's forward axis in the ground plane."""
-        x, y, z, w = self.root_frame()[1] if link == 0 else self._state(link)[5]
-        return 1.0 - 2.0 * (y * y + z * z), 2.0 * (x * y + w * z)
 
     def _contacts(self) -> list[list[Contact]]:
         """Contact points with the ground, by foot."""
@@ -112,7 +118,8 @@ class BulletFeet:
         return place, turn
 
 
-def _sliding(points: list[Contact]) -> tuple[float, float]:
-    """The way a foot tends to slide in the ground plane: against the friction force on it."""
+def _force(points: list[Contact]) -> tuple[float, float, float]:
+    """The floor's force on a foot: friction in the plane, load across it."""
     forces = [(point[at], point[at + 1]) for point in points for at in FRICTION]
-    return -sum(size * way[0] for size, way in forces), -sum(size * way[1] for size, way in forces)
+    x, y = (sum(size * way[axis] for size, way in forces) for axis in (0, 1))
+    return x, y, sum(point[NORMAL_N] for point in points)

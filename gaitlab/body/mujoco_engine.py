@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import importlib
-from dataclasses import replace
 from types import ModuleType
 from typing import Any
 
@@ -12,8 +11,8 @@ from numpy.typing import NDArray
 from scipy.linalg import eigh
 from scipy.spatial.transform import Rotation
 
-from gaitlab.body.bristle import bristle_friction
-from gaitlab.body.drive import Drive
+from gaitlab.body.bristle import Bristles
+from gaitlab.body.drive import PressureDrive
 from gaitlab.body.dynamics import free_joint_mass
 from gaitlab.body.engine import EngineSettings, FeetState
 from gaitlab.body.mujoco_scene import scene_xml
@@ -38,7 +37,7 @@ class MujocoEngine:
     """A body model in its own MuJoCo world; see the Engine protocol.
 
     Springs and dampers of the joints are MuJoCo's own and implicit, so the torques that are loaded hold the pressure and the
-    solid limits only: its `drive` has no feedback. Raises InputError for a step too long for the springs.
+    solid limits only. Raises InputError for a step too long for the springs.
     """
 
     name = "mujoco"
@@ -48,16 +47,17 @@ class MujocoEngine:
         self._mujoco = mujoco_module()
         self.model = model
         self.settings = settings
-        drive = Drive.of(model, step_s=settings.step_s, inertia_factor=settings.inertia_factor)
-        self.drive = replace(drive, feedback=np.zeros_like(drive.feedback))
+        self.drive = PressureDrive(model, step_s=settings.step_s, inertia_factor=settings.inertia_factor)
         self._world = self._mujoco.MjModel.from_xml_string(scene_xml(model, settings))
         self._data = self._mujoco.MjData(self._world)
         _raise_inertia(self._mujoco, self._world, self._data, model, settings.inertia_factor)
         self._mujoco.mj_forward(self._world, self._data)
         self._foot_of = _foot_of_geom(self._mujoco, self._world, model)
+        self._foot_of_pair = [self._foot_of[int(geom)] for geom in self._world.pair_geom2]
+        self._down = np.array([(0.0, 0.0, foot.radius_m) for foot in model.feet])
         self._links = [foot.link + 1 for foot in model.feet]
         self._middles = np.array([np.mean(foot.centres_m, axis=0) for foot in model.feet]).reshape(-1, 3)
-        self._bristles = [index for index, foot in enumerate(model.feet) if foot.bristle]
+        self._bristles = Bristles(model, step_s=settings.step_s, inertia_factor=settings.inertia_factor)
 
     def joint_state(self) -> FloatArray:
         """Joint positions and speeds, shape (J, 2)."""
@@ -67,7 +67,7 @@ class MujocoEngine:
         """Load torques and step."""
         self._data.qfrc_applied[6:] = torque
         self._mujoco.mj_step(self._world, self._data)
-        if self._bristles:
+        if self._bristles.feet:
             self._comb()
 
     def base_pose(self) -> tuple[FloatArray, FloatArray]:
@@ -130,14 +130,25 @@ class MujocoEngine:
         return forces
 
     def _comb(self) -> None:
-        """Give every bristle foot the friction of the way it tends to slide, read from the force that holds it now."""
-        forces = self._foot_forces()
-        for geom, index in self._foot_of.items():
-            foot = self.model.feet[index]
-            if foot.bristle and forces[index, 2] > 0.0:
-                forward = self._data.xmat[foot.link + 1].reshape(3, 3)[:, 0]
-                friction = bristle_friction(foot.friction, -forces[index], forward)
-                self._world.geom_friction[geom, 0] = friction * self.model.ground_friction
+        """Give every bristle foot the friction of the way it slides or tends to slide, and its force across."""
+        feet, data = self._bristles.feet, self._data
+        links = [self._links[index] for index in feet]
+        rotation = data.xmat[links].reshape(len(feet), 3, 3)
+        sole = data.xpos[links] + np.einsum("fij,fj->fi", rotation, self._middles[feet]) - self._down[feet]
+        speed = data.cvel[links, 3:] + np.cross(data.cvel[links, :3], sole - data.subtree_com[1])
+        along, across = self._bristles.combed(rotation[:, :, 0], speed, self._foot_forces()[feet])
+        for pair, index in enumerate(self._foot_of_pair):
+            if index in feet:
+                self._world.pair_friction[pair, :2] = along[feet.index(index)]
+        self._push(links, sole, across)
+
+    def _push(self, links: list[int], place: FloatArray, across_N: FloatArray) -> None:
+        """Load forces in the plane at `place` for the next step."""
+        self._data.xfrc_applied[:] = 0.0
+        for link, at, (x, y) in zip(links, place, across_N, strict=True):
+            force = np.array([x, y, 0.0])
+            self._data.xfrc_applied[link, :3] += force
+            self._data.xfrc_applied[link, 3:] += np.cross(at - self._data.xipos[link], force)
 
 
 def _check_step(model: BodyModel, settings: EngineSettings) -> None:

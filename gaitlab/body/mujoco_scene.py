@@ -18,6 +18,7 @@ IMPRATIO = 10.0
 CONTACT_S = 0.004
 # Nearly rigid from 0.1 mm of penetration on (chosen by us; Bullet's own slop is a tenth of that).
 SOLIMP = (0.9, 0.99, 1e-3)
+FRICTION_S = 0.008
 KINDS = {"revolute": "hinge", "prismatic": "slide"}
 
 
@@ -30,7 +31,6 @@ def scene_xml(model: BodyModel, settings: EngineSettings) -> str:
     SubElement(root, "compiler", angle="radian", autolimits="true")
     _options(root, model, settings)
     world = SubElement(root, "worldbody")
-    # The greater friction of a pair counts here, so the plane has none and each foot holds the product of both.
     SubElement(
         world, "geom", name="floor", type="plane", size="0 0 0.1", contype="1", conaffinity="0", friction="0 0 0"
     )
@@ -38,7 +38,8 @@ def scene_xml(model: BodyModel, settings: EngineSettings) -> str:
     for index, link in enumerate(model.links[1:], start=1):
         bodies.append(_child(bodies[link.parent], model, index))
     for index in range(len(model.links)):
-        _feet(bodies[index], model, index, settings)
+        _feet(bodies[index], model, index)
+    _contacts(root, model, settings)
     return tostring(root, encoding="unicode")
 
 
@@ -93,8 +94,7 @@ def _joint(body: Element, joint: Joint, index: int) -> None:
     )
 
 
-def _feet(body: Element, model: BodyModel, link: int, settings: EngineSettings) -> None:
-    reference = _text((max(CONTACT_S, 2.0 * settings.step_s), 1.0))
+def _feet(body: Element, model: BodyModel, link: int) -> None:
     for index, foot in enumerate(model.feet):
         if foot.link == link:
             for sphere, centre in enumerate(foot.centres_m):
@@ -107,14 +107,27 @@ def _feet(body: Element, model: BodyModel, link: int, settings: EngineSettings) 
                     pos=_text(centre),
                     mass="0",
                     contype="0",
-                    conaffinity="1",
-                    condim="3",
-                    friction=_text((foot.friction[0] * model.ground_friction, 0.0, 0.0)),
-                    solref=reference,
-                    solimp=_text(SOLIMP),
-                    solmix="1",
-                    priority="1",
+                    conaffinity="0",
                 )
+
+
+def _contacts(root: Element, model: BodyModel, settings: EngineSettings) -> None:
+    """One explicit pair for every sphere and the floor, in the order of feet and spheres: nothing else touches."""
+    contact = SubElement(root, "contact")
+    for index, foot in enumerate(model.feet):
+        friction = foot.friction[0] * model.ground_friction
+        for sphere in range(len(foot.centres_m)):
+            SubElement(
+                contact,
+                "pair",
+                geom1="floor",
+                geom2=f"f{index}_{sphere}",
+                condim="3",
+                friction=_text((friction, friction, 0.0, 0.0, 0.0)),
+                solref=_text((max(CONTACT_S, 2.0 * settings.step_s), 1.0)),
+                solreffriction=_text((FRICTION_S, 1.0)),
+                solimp=_text(SOLIMP),
+            )
 
 
 def _text(numbers: Iterable[float]) -> str:
