@@ -62,8 +62,9 @@ class SupplyLaw(Protocol):
 class Network:
     """One ring with its loads. Arrays over stages (N,), over bellows (n,); `fed_by` the output (0…N−1) of each bellows.
 
-    `volume_m3` is what is rigid at each output; an opening is the fraction of the open conductance. `complement` 1 shuts the resistor as the valve opens (a push-pull stage, whose closed forms are known); a vacuum
-    ring has 0. `swept_m3_s` is the syringe's growth of the manifold.
+    `volume_m3` is what is rigid at each output; an opening is the fraction of the open conductance. `complement` 1 shuts
+    the resistor as the valve opens (a push-pull stage, whose closed forms are known); a vacuum ring has 0. `swept_m3_s`
+    is the syringe's growth of the manifold.
     """
 
     gas_J_kg: float

@@ -17,6 +17,10 @@ from gaitlab.ring.waves import FloatArray
 RENEWALS_MAX = 6  # times that a run without cuts is given a new level and double the time
 BISECTIONS = 40  # of a step: finds a cut to 1e-12 of it
 OFF_MIDDLE = 0.2  # of a swing that the level may be off its middle: moving it makes cuts hard to compare
+# A manifold whose change from cut to cut shrinks by a steady ratio in this range is moved ahead, if the change is at least
+# SLOW_LEAST full swings; the clock is moved by the periods after which SLOW_LEFT full swings are left. All chosen by us.
+SLOW_FROM, SLOW_TO, SLOW_STEADY = 0.6, 0.995, 0.05
+SLOW_LEAST, SLOW_LEFT = 2e-3, 5e-3
 STILL = 1e-6  # full swings per characteristic time that count as standing still
 KICKS_MAX, KICK = 3, 1e-2  # how often, and by how many full swings, a ring balanced on a ridge is moved off it
 
@@ -34,7 +38,7 @@ class Settings:
     tight: float = 2e-4
     near: float = 1e-2
     closed: float = 1e-4
-    cuts_max: int = 60
+    cuts_max: int = 40
 
 
 @dataclass(frozen=True)
@@ -91,10 +95,11 @@ def characteristic_time(circuit: Circuit) -> float:
 def settled(circuit: Circuit, start: FloatArray, settings: Settings = Settings()) -> Settled:
     """Follow the circuit from `start` until it is periodic, at rest for good, or neither after all patience."""
     run = _Run(circuit, start, settings)
-    run.approach()
-    if run.kind != "near":
-        return Settled(run.kind, tuple(run.cuts_s), run.state)
-    return run.closed()
+    while run.kind == "going":
+        run.approach()
+        if run.kind == "near":
+            run.close()
+    return Settled(run.kind, tuple(run.cuts_s), run.state, run.cycle)
 
 
 class _Run:
@@ -107,6 +112,8 @@ class _Run:
         self.cuts_s: list[float] = []
         self.level = self.low = self.high = _first_level(circuit)
         self.kind, self.kicks = "going", 0
+        self.cycle: Cycle | None = None
+        self.drift = self.ratio = 0.0
 
     def approach(self) -> None:
         """Run loosely until two cuts agree, or the ring stands still for good, or patience ends."""
@@ -127,22 +134,26 @@ class _Run:
                 if renewals > RENEWALS_MAX:
                     self.kind, self.state = "wandering", step.after
 
-    def closed(self) -> Settled:
-        """Tight periods from the last cut until one closes, the level left alone.
+    def close(self) -> None:
+        """Tight periods from the last cut until one closes, the level left alone; a ring that dies away goes on.
 
         Where gaps shrink by a factor ρ a period, gap ρ/(1 − ρ) is left; that or the gap itself must be below `closed`.
         """
         gap = 0.0
-        for _ in range(self.settings.cuts_max):
+        while self.kind == "near":
             start_s, start = self.time, self.state
             kept = self._one_period()
             before, gap = gap, self._apart(start)
+            if self.kind != "near" or self._skipped(start, self.settings.closed):
+                break
             if gap < self.settings.closed * max(1.0, (before - gap) / gap):
-                cycle = Cycle(start_s, self.time - start_s, tuple(kept), gap)
-                return Settled("periodic", tuple(self.cuts_s), self.state, cycle)
-        return Settled("wandering", tuple(self.cuts_s), self.state)
+                self.kind = "periodic"
+                self.cycle = Cycle(start_s, self.time - start_s, tuple(kept), gap)
+            elif len(self.cuts_s) >= 2 * self.settings.cuts_max:
+                self.kind = "wandering"
 
     def _one_period(self) -> list[Step]:
+        """The steps to the next cut; if the ring stands still instead, the run is sent back on its way (`kind`)."""
         self._restart(self.settings.tight)
         kept: list[Step] = []
         while True:
@@ -150,6 +161,9 @@ class _Run:
             theta = self._cut(kept[-1])
             if theta is not None:
                 self._moved_to(kept[-1], theta)
+                return kept
+            if self._still(kept[-1]):
+                self.state, self.time, self.kind = kept[-1].after, kept[-1].end_s, "going"
                 return kept
 
     def _restart(self, tolerance: float) -> None:
@@ -192,12 +206,40 @@ class _Run:
         """A cut on the way: near enough to the one before, or one more."""
         earlier = self.state
         self._moved_to(step, theta)
-        if len(self.cuts_s) > 2 and self._apart(earlier) < self.settings.near:
+        if len(self.cuts_s) > 2 and self._skipped(earlier, SLOW_LEAST):
+            self._restart(self.settings.loose)
+        elif len(self.cuts_s) > 2 and self._apart(earlier) < self.settings.near and not self._far():
             self.kind = "near"
         elif len(self.cuts_s) >= self.settings.cuts_max:
             self.kind = "wandering"
         else:
             self._renew_level()
+
+    def _skipped(self, earlier: FloatArray, least: float) -> bool:
+        """Whether a slowly filling manifold was moved to where it is heading, and the clock by the periods that would take.
+
+        Its content then changes by a steady ratio from cut to cut, and the rest of that series is known: everything else
+        in a ring forgets within a few periods and follows. Changes below `least` full swings are let be.
+        """
+        content = self.state.size - 2
+        drift = float(self.state[content] - earlier[content]) / float(self.scale[content])
+        ratio = drift / self.drift if self.drift else 0.0
+        steady = SLOW_FROM < ratio < SLOW_TO and abs(ratio - self.ratio) < SLOW_STEADY
+        self.drift, self.ratio = drift, ratio
+        if not steady or abs(drift) < least:
+            return False
+        period, way = self.cuts_s[-1] - self.cuts_s[-2], drift * ratio / (1.0 - ratio)
+        self.state = self.state.copy()
+        self.state[content] += way * self.scale[content]
+        self.time += period * max(0.0, float(np.log(SLOW_LEFT / abs(way)) / np.log(ratio)))
+        self.drift = self.ratio = 0.0
+        self.kind = "going"
+        return True
+
+    def _far(self) -> bool:
+        """Whether the manifold, going on as it does, would still move by more than `near`."""
+        slow = SLOW_FROM < self.ratio < SLOW_TO
+        return slow and abs(self.drift) > self.settings.near * (1.0 - self.ratio)
 
     def _renew_level(self) -> None:
         """Take the middle of the swing since the last cut as the new level, if the old one is far off it."""

@@ -51,12 +51,12 @@ def ideal_phases(sequence: str | Sequence[float], stages: int) -> FloatArray:
     phases = np.asarray(sequence, dtype=float)
     if phases.shape != (stages,) or not np.all(np.isfinite(phases)):
         raise InputError(must("sequence", f"a list of {stages} phases, one for each output", list(sequence)))
-    return np.mod(phases, 1.0)
+    return np.asarray(np.mod(phases, 1.0))
 
 
 def _named_phases(name: str, stages: int) -> FloatArray:
     if name == "natural":
-        return _wrapped(np.arange(stages) * natural_lag(stages))
+        return _wrapped(natural_lag(stages) * np.arange(stages, dtype=float))
     if name not in SEQUENCES:
         raise InputError(must("sequence", "one of " + ", ".join(SEQUENCES), name))
     phases = np.empty(stages)
@@ -66,7 +66,7 @@ def _named_phases(name: str, stages: int) -> FloatArray:
 
 def _wrapped(phases: FloatArray) -> FloatArray:
     """Phases in [0, 1), rounded to 12 digits first so that 2.9999999999999996 becomes 0 and not nearly 1."""
-    return np.mod(np.round(phases, 12), 1.0)
+    return np.asarray(np.mod(np.round(phases, 12), 1.0))
 
 
 def raised_cosine(phase: FloatArray, vacuum_Pa: float) -> FloatArray:

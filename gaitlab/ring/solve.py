@@ -12,7 +12,7 @@ from gaitlab.ring.circuit import Circuit, circuit_of_pattern
 from gaitlab.ring.pattern import LoadPattern, Placement, placed_pattern
 from gaitlab.ring.periodic import Settings, nudged, settled
 from gaitlab.ring.reading import oscillating_run, resting_run
-from gaitlab.ring.verdict import margins, rest_outcome, run_outcome
+from gaitlab.ring.verdict import margins, rest_outcome, run_outcome, travelling_edges
 from gaitlab.ring.waves import FloatArray, RingRun, Waves
 from gaitlab.robot.records import Robot
 from gaitlab.wiring.wiring import HELD, OPEN, Source, Wiring
@@ -53,9 +53,11 @@ def run_from(circuit: Circuit, start: FloatArray, *, settings: Settings = Settin
     followed = settled(circuit, start, settings)
     if followed.cycle is None:
         outcome, remedy = rest_outcome(circuit, followed, settings)
-        return resting_run(circuit, followed, outcome=outcome, remedy=remedy)
+        run = resting_run(circuit, followed, outcome=outcome, remedy=remedy)
+        unsteady = followed.kind == "wandering"
+        return replace(run, harmonic=travelling_edges(circuit, followed.end)) if unsteady else run
     run = oscillating_run(circuit, followed, followed.cycle)
-    outcome, remedy = run_outcome(run)
+    outcome, remedy = run_outcome(circuit, run)
     return replace(run, outcome=outcome, remedy=remedy, details=margins(circuit, run))
 
 

@@ -10,8 +10,8 @@ from gaitlab.air.valve import threshold_Pa
 from gaitlab.ring.circuit import Circuit, circuit_of_pattern
 from gaitlab.ring.inverter import InverterCurve, inverter_curve
 from gaitlab.ring.manifold import stiffened
-from gaitlab.ring.periodic import Settled, Settings, nudged, settled
-from gaitlab.ring.waves import RingRun
+from gaitlab.ring.periodic import Settings, Settled, nudged, settled
+from gaitlab.ring.waves import FloatArray, RingRun
 
 OSCILLATES, HIGHER_HARMONIC = "oscillates", "higher_harmonic"
 LATCHES, SETTLES, TOO_WEAK, STARVES, WANDERS = "latches", "settles", "too_weak", "starves", "wanders"
@@ -25,27 +25,48 @@ REMEDIES = {
     "a valve that opens over a narrower span",
     TOO_WEAK: "the supply cannot pull an output past the next valve's threshold; use a deeper vacuum, a softer valve "
     "(lower threshold or sealing) or a tighter one (less leak)",
-    STARVES: "the ring draws the manifold down until it stops; use a stronger pump or larger resistors "
+    STARVES: "the ring draws the manifold down until it stops or loses its order; use a stronger pump or larger resistors "
     "(gaitlab supply names the smallest free flow that keeps it alive)",
     WANDERS: "no steady period was found; look for stages that differ a lot or loads far larger than the rest",
 }
 
 
-def run_outcome(run: RingRun) -> tuple[str, str]:
-    """Outcome and remedy of a periodic run: the fundamental oscillates, anything else is a higher harmonic."""
-    name = OSCILLATES if run.harmonic == 1 else HIGHER_HARMONIC
+def run_outcome(circuit: Circuit, run: RingRun) -> tuple[str, str]:
+    """Outcome and remedy of a periodic run: the fundamental oscillates.
+
+    Anything else is a higher harmonic, or a ring whose supply has sagged so far that its stages follow the manifold
+    instead of one another.
+    """
+    if run.harmonic == 1:
+        name = OSCILLATES
+    else:
+        name = HIGHER_HARMONIC if lifts(circuit, run.supply_mean_Pa) else STARVES
     return name, REMEDIES[name]
 
 
 def rest_outcome(circuit: Circuit, run: Settled, settings: Settings) -> tuple[str, str]:
     """Outcome and remedy of a run that did not end in a period.
 
-    In this order: `wanders` if it never came to rest; `latches` for an even ring; `too_weak` if at the supply's dead end
-    a shut stage does not lift the next valve off its seat; `starves` if the same ring on a house line of that vacuum
-    runs; else `settles`.
+    One that never came to rest `starves` if the manifold has sagged below what lifts a valve, else carries a
+    `higher_harmonic` if more than one edge is on its way, else `wanders`. One at rest `latches` if the ring is even; is
+    `too_weak` if even at the supply's dead end a shut stage does not lift the next valve; `starves` if the same
+    ring on a house line of that vacuum runs; else `settles`.
     """
-    name = WANDERS if run.kind == "wandering" else _rest_name(circuit, settings)
+    name = _unsteady_name(circuit, run) if run.kind == "wandering" else _rest_name(circuit, settings)
     return name, REMEDIES[name]
+
+
+def _unsteady_name(circuit: Circuit, run: Settled) -> str:
+    if not lifts(circuit, circuit.gas.pressure_Pa - float(run.end[-2] / run.end[-1])):
+        return STARVES
+    return HIGHER_HARMONIC if travelling_edges(circuit, run.end) > 1 else WANDERS
+
+
+def travelling_edges(circuit: Circuit, state: FloatArray) -> int:
+    """How many edges are on their way round the ring: neighbours that stand on the same side of the switching level."""
+    vacuum = circuit.gas.pressure_Pa - circuit.network.split(state)[0]
+    high = vacuum > np.array([valve.threshold_Pa + 0.5 * valve.opening_span_Pa for valve in circuit.valves])
+    return int(np.sum(high == np.roll(high, 1)))
 
 
 def _rest_name(circuit: Circuit, settings: Settings) -> str:
@@ -54,16 +75,19 @@ def _rest_name(circuit: Circuit, settings: Settings) -> str:
         return LATCHES
     if stages == 1:
         return SETTLES
-    if not all(_lifts(circuit, k) for k in range(stages)):
+    if not lifts(circuit, dead_end(circuit)):
         return TOO_WEAK
     return STARVES if _runs_on_house_line(circuit, settings) else SETTLES
 
 
-def _lifts(circuit: Circuit, stage: int) -> bool:
-    """Whether this stage's high level at the dead end reaches half way through the next valve's opening span."""
-    following = circuit.valves[(stage + 1) % len(circuit.valves)]
-    high = curve_of(circuit, stage, dead_end(circuit)).high_Pa
-    return high > threshold_Pa(following, 0.0, high) + 0.5 * following.opening_span_Pa
+def lifts(circuit: Circuit, supply_Pa: float) -> bool:
+    """Whether at this supply vacuum each stage, shut, opens the next valve at least half way."""
+    valves = circuit.valves
+    for stage, after in enumerate(valves[1:] + valves[:1]):
+        high = curve_of(circuit, stage, supply_Pa).high_Pa
+        if high <= threshold_Pa(after, 0.0, high) + 0.5 * after.opening_span_Pa:
+            return False
+    return True
 
 
 def _runs_on_house_line(circuit: Circuit, settings: Settings) -> bool:
