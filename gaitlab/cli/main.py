@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import importlib
+import os
 import platform
 import sys
 from importlib import metadata
@@ -168,8 +169,14 @@ def cli() -> None:
 cli.params.append(_debug_option())
 
 
+# The matrices here are small: threads inside numpy cost more than they give, and their number must not touch the last digits.
+THREAD_SETTINGS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")
+
+
 def main(arguments: list[str] | None = None) -> None:
     """Runs the command line and ends the process with its exit code."""
+    for name in THREAD_SETTINGS:
+        os.environ.setdefault(name, "1")  # before the first command imports numpy
     try:
         cli.main(args=arguments, prog_name="gaitlab", standalone_mode=True)
     except KeyboardInterrupt:
