@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from scipy.linalg import eigh
 from scipy.optimize import linprog
 
-from gaitlab.body.drive import step_damping
+from gaitlab.body.drive import damping_parts
 from gaitlab.body.dynamics import centre_of_mass, free_joint_mass, link_origins
 from gaitlab.body.records import GRAVITY_M_S2, BodyModel, ChainModel
 from gaitlab.errors import InputError, must
@@ -160,7 +160,7 @@ def explicit_number(model: BodyModel, *, step_s: float, inertia_factor: float) -
     The step is stable below 4.
     """
     mass = free_joint_mass(model, inertia_factor)
-    damping = step_damping(model, step_s=step_s, inertia_factor=inertia_factor)
+    damping = damping_parts(model)[1]
     stiffness = np.diag([joint.stiffest(model.vacuum_max_Pa) for joint in model.joints])
     fastest = eigh(2.0 * step_s * damping + step_s**2 * stiffness, mass, eigvals_only=True)
     return float(fastest[-1])

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
 from numpy.typing import NDArray
 from scipy.linalg import helmert
@@ -14,65 +12,80 @@ from gaitlab.body.records import BodyModel
 FloatArray = NDArray[np.float64]
 
 
-@dataclass(frozen=True)
 class Drive:
-    """The law of all joints: torque = pressure − K q − C q̇ − stop.
+    """The law of all joints of one running body: torque = pressure − K q − stop − C q̇, a fresh one for every run.
 
-    `per_Pa` (J, inlets) turns vacuum into torque; `feedback` (J, 2J) multiplies all q, then all q̇;
-    `damping` is the C inside it (J, J).
+    The lengthwise damping of a whole bellows uses the present q̇. What moves only light segments (see light_motions) would
+    need tens of kHz that way, so there the damper is linearly implicit: it uses the speed w at the end of the step,
+
+        (M + Δt C) w = M (2 v − v₋) + Δt (τ − τ₋) + Δt C w₋,
+
+    v the speed, τ the torque of pressure, spring and stop, M the mass matrix frozen at zero pose, and ₋ one step ago. The
+    right-hand side carries on the step before, so that what the ground does to the joint is in it: at rest w is zero and
+    statics are exact, in the air it is the implicit Euler step, and it is stable where the true mass is above 3/4 of M.
+    Lengthwise motion must not be among it: its true mass is the trunk once the foot stands.
     """
 
-    per_Pa: FloatArray
-    feedback: FloatArray
-    damping: FloatArray
-    stop_at: FloatArray
-    stop_gain: FloatArray
-
-    @classmethod
-    def of(cls, model: BodyModel, *, step_s: float, inertia_factor: float) -> Drive:
-        """The drive of a model for one step length and inertia factor."""
+    def __init__(self, model: BodyModel, *, step_s: float, inertia_factor: float) -> None:
         joints = model.joints
-        damping = step_damping(model, step_s=step_s, inertia_factor=inertia_factor)
-        feedback = np.zeros((len(joints), 2 * len(joints)))
-        feedback[:, : len(joints)] = -np.diag([joint.stiffness for joint in joints])
-        feedback[:, len(joints) :] = -damping
-        return cls(
-            per_Pa=_per_Pa(model),
-            feedback=feedback,
-            damping=damping,
-            stop_at=np.array([joint.stop_at for joint in joints]),
-            stop_gain=np.array([joint.stop_gain for joint in joints]),
-        )
+        self._per_Pa = _per_Pa(model)
+        self._stiffness = np.array([joint.stiffness for joint in joints])
+        self._stop_at = np.array([joint.stop_at for joint in joints])
+        self._stop_gain = np.array([joint.stop_gain for joint in joints])
+        implicit, explicit = damping_parts(model)
+        self._ahead = _look_ahead(model, implicit, step_s=step_s, inertia_factor=inertia_factor)
+        self._damping = -np.hstack([implicit, explicit])
+        self._last: tuple[FloatArray, FloatArray, FloatArray] | None = None
 
     def pressure_torque(self, vacuum_Pa: FloatArray) -> FloatArray:
         """Torques or forces (steps, J) of the vacuum (steps, inlets) [Pa]."""
-        return np.asarray(vacuum_Pa @ self.per_Pa.T)
+        return np.asarray(vacuum_Pa @ self._per_Pa.T)
 
-    def torque(self, pressure_torque: FloatArray, state: FloatArray) -> FloatArray:
-        """Torques or forces (J,) at one instant; `state` is (J, 2) of positions and speeds."""
-        torque = pressure_torque + self.feedback @ state.T.ravel()
-        past = np.abs(state[:, 0]) - self.stop_at
+    def elastic_torque(self, pressure_torque: FloatArray, position: FloatArray) -> FloatArray:
+        """Torques or forces (J,) of pressure, spring and solid limit."""
+        torque = pressure_torque - self._stiffness * position
+        past = np.abs(position) - self._stop_at
         if past.max() > 0.0:
-            torque -= np.sign(state[:, 0]) * self.stop_gain * np.maximum(past, 0.0) ** 2
+            torque -= np.sign(position) * self._stop_gain * np.maximum(past, 0.0) ** 2
         return np.asarray(torque)
 
+    def torque(self, pressure_torque: FloatArray, state: FloatArray) -> FloatArray:
+        """Torques or forces (J,) at this instant; `state` is (J, 2) of positions and speeds. To be called once a step."""
+        position, speed = state.T
+        elastic = self.elastic_torque(pressure_torque, position)
+        speed_was, elastic_was, ahead_was = self._last or (speed, elastic, speed)
+        ahead = self._ahead @ np.concatenate([2.0 * speed - speed_was, elastic - elastic_was, ahead_was])
+        self._last = (speed, elastic, ahead)
+        return np.asarray(elastic + self._damping @ np.concatenate([ahead, speed]))
 
-def step_damping(model: BodyModel, *, step_s: float, inertia_factor: float) -> FloatArray:
-    """Damping matrix (J, J) that one explicit step of `step_s` can take.
 
-    The lengthwise motion of a whole bellows keeps its own c. What moves only light segments (the turns, and the segments of
-    one bellows against each other) would need tens of kHz, so it gets the linearly implicit damper C̃ = (C⁻¹ + Δt M⁻¹)⁻¹
-    with the mass matrix M frozen at zero pose: no such mode is damped faster than 1/Δt, slow modes keep their damping,
-    statics do not see it. Lengthwise motion must not be among them: its true mass is the trunk once the foot stands.
-    """
+class PressureDrive(Drive):
+    """For an engine that has the springs and dampers inside it: pressure and solid limits only."""
+
+    def elastic_torque(self, pressure_torque: FloatArray, position: FloatArray) -> FloatArray:
+        """Torques or forces (J,) of pressure and solid limit."""
+        return super().elastic_torque(pressure_torque, position) + self._stiffness * position
+
+    def torque(self, pressure_torque: FloatArray, state: FloatArray) -> FloatArray:
+        """Torques or forces (J,) at this instant."""
+        return self.elastic_torque(pressure_torque, state[:, 0])
+
+
+def damping_parts(model: BodyModel) -> tuple[FloatArray, FloatArray]:
+    """Damping matrices (J, J) of what only moves light segments, and of the rest; their sum is the joints' own damping."""
     plain = np.diag([joint.damping for joint in model.joints])
     light = light_motions(model)
-    if not light.shape[1]:
-        return plain
+    implicit = light @ light.T @ plain @ light @ light.T
+    return implicit, plain - implicit
+
+
+def _look_ahead(model: BodyModel, implicit: FloatArray, *, step_s: float, inertia_factor: float) -> FloatArray:
+    """Matrix (J, 3J) that gives w from (2 v − v₋, τ − τ₋, w₋), zero outside the light motions."""
+    light = light_motions(model)
     mass = light.T @ free_joint_mass(model, inertia_factor) @ light
-    stiff = light.T @ plain @ light
-    soft = np.linalg.inv(np.linalg.inv(stiff) + step_s * np.linalg.inv(mass))
-    return np.asarray(plain + light @ (0.5 * (soft + soft.T) - stiff) @ light.T)
+    damping = step_s * light.T @ implicit @ light
+    solved = np.linalg.solve(mass + damping, np.hstack([mass @ light.T, step_s * light.T, damping @ light.T]))
+    return np.asarray(light @ solved)
 
 
 def light_motions(model: BodyModel) -> FloatArray:
