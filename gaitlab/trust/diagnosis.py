@@ -62,7 +62,7 @@ def _words(robot: Robot, item: Fitted, match: Match) -> str:
             return _opening_words(robot, item, match)
         case "leak":
             return (
-                f"output {stage} leaks {_leak_L_min(robot, item, match):.2f} L/min at its peak vacuum: "
+                f"output {stage} leaks {_leak_mL_min(robot, item, match):.3g} mL/min at its peak vacuum: "
                 f"valve seat {stage}, a fitting, the tube or the bellows on it"
             )
         case "volume":
@@ -93,11 +93,11 @@ def _opening_words(robot: Robot, item: Fitted, match: Match) -> str:
     return f"stage {item.stage} evacuates fast: {flow}: too wide, or air bypasses it"
 
 
-def _leak_L_min(robot: Robot, item: Fitted, match: Match) -> float:
+def _leak_mL_min(robot: Robot, item: Fitted, match: Match) -> float:
     gas, peak_Pa = gas_of(robot.ambient), float(match.run.peak_vacuum_Pa[item.stage - 1])
     valve = stage_parts(robot, item.stage)[1]
     flow = exact_mass_flow(valve.open, gas.pressure_Pa, gas.pressure_Pa - peak_Pa, gas)
-    return item.value * flow / ANR_KG_M3 * 60e3
+    return item.value * flow / ANR_KG_M3 * 60e6
 
 
 def _tube_findings(wiring: Wiring, reading: TraceReading, match: Match) -> list[Finding]:

@@ -15,14 +15,14 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.optimize import least_squares
 
-from gaitlab.ring.measures import crossings, half_swing
+from gaitlab.ring.measures import crossings
 from gaitlab.ring.periodic import Settings
 from gaitlab.ring.solve import ring_run
 from gaitlab.ring.waves import RingRun
 from gaitlab.robot.circuit import Syringe
 from gaitlab.robot.records import Robot
 from gaitlab.trust.as_built import AsBuilt, StageBuild, built_robot, stage_parts
-from gaitlab.trust.trace_reading import PHASES, TraceReading
+from gaitlab.trust.trace_reading import PHASES, TraceReading, middle_and_swing
 from gaitlab.wiring.wiring import Wiring
 
 FloatArray = NDArray[np.float64]
@@ -229,11 +229,12 @@ class _Target:
 
 
 def gauge_pairs(run: RingRun, reading: TraceReading) -> list[tuple[FloatArray, FloatArray]]:
-    """(model, measured) of every gauge at PHASES phases from the reference stage's edge on [Pa]."""
+    """(model, measured) of every gauge at PHASES phases from the reference stage's edge on [Pa].
+
+    Gauges at bellows are left out: what happens behind a port must not be blamed on the ring (`diagnosis` compares them).
+    """
     shift = _reference_edge(run, reading.reference_stage)
     pairs = [(_resampled(run.output_vacuum_Pa[k - 1], shift), g.vacuum_Pa) for k, g in reading.stages]
-    for inlet, gauge in reading.inlets:
-        pairs.append((_resampled(run.waves.vacuum_Pa[run.waves.inlets.index(inlet)], shift), gauge.vacuum_Pa))
     if reading.supply_Pa is not None:
         pairs.append((_resampled(np.atleast_1d(run.supply_vacuum_Pa), shift), reading.supply_Pa))
     return pairs
@@ -243,7 +244,7 @@ def _reference_edge(run: RingRun, stage: int) -> float:
     wave = run.output_vacuum_Pa[stage - 1]
     if run.outcome != OSCILLATES or len(wave) < 4:
         return 0.0
-    up, _ = crossings(wave, half_swing(wave))
+    up, _ = crossings(wave, middle_and_swing(wave)[0])
     return float(up[0]) if len(up) else 0.0
 
 

@@ -1,7 +1,7 @@
 """What measured traces say before any model: period, phases, levels and one averaged period of every gauge.
 
-A stage's edge is where its vacuum rises through the middle of its swing; phases are lags of edges behind the first measured
-stage, as fractions of a period; levels are medians over the whole periods.
+A stage's edge is where its vacuum rises through the middle of its swing (between its 5 % and 95 % points); phases are
+lags of edges behind the first measured stage, as fractions of a period; levels are read off the averaged period.
 """
 
 from __future__ import annotations
@@ -80,10 +80,10 @@ def rising_edges(time_s: FloatArray, vacuum_Pa: FloatArray) -> FloatArray:
     """Times (E,) at which the vacuum rises through the middle of its swing, straight between samples; none without a swing."""
     good = np.isfinite(vacuum_Pa)
     t, v = time_s[good], vacuum_Pa[good]
-    low, high = np.quantile(v, (0.05, 0.95))
-    if high - low < SWING_LEAST_PA:
+    middle, swing = middle_and_swing(v)
+    if swing < SWING_LEAST_PA:
         return np.empty(0)
-    middle, guard = (low + high) / 2, GUARD * (high - low)
+    guard = GUARD * swing
     found: list[float] = []
     armed = False
     for i in range(len(v)):
@@ -93,6 +93,12 @@ def rising_edges(time_s: FloatArray, vacuum_Pa: FloatArray) -> FloatArray:
             found.append(_crossing(t, v, i, middle))
             armed = False
     return np.array(found)
+
+
+def middle_and_swing(vacuum_Pa: FloatArray) -> tuple[float, float]:
+    """The middle level and the swing between the 5 % and 95 % points: extremes of noise do not count."""
+    low, high = np.quantile(vacuum_Pa, (0.05, 0.95))
+    return float(low + high) / 2, float(high - low)
 
 
 def _crossing(t: FloatArray, v: FloatArray, i: int, middle: float) -> float:
