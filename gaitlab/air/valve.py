@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, fields
+from functools import cached_property
+from typing import NamedTuple
 
 import numpy as np
 
@@ -13,6 +15,25 @@ from gaitlab.robot.circuit import Valve, ValveGeometry
 
 # Rounds off the switch between "side a is the deeper one" and "side b is"; chosen by us, far below any threshold.
 SIDE_BLEND_PA = 200.0
+
+
+class _PerSpan(NamedTuple):
+    """Threshold (1), and the weights [1/Pa] of control, half the flow sides' sum, their distance, and of the opening (1)."""
+
+    threshold: FloatArray
+    control: FloatArray
+    half: FloatArray
+    lift: FloatArray
+    hysteresis: FloatArray
+
+
+class OpeningSlopes(NamedTuple):
+    """Derivatives of the opening target by control vacuum, both flow-side vacuums [1/Pa] and the present opening [1]."""
+
+    by_control: FloatArray
+    by_a: FloatArray
+    by_b: FloatArray
+    by_opening: FloatArray
 
 
 @dataclass(frozen=True)
@@ -32,15 +53,13 @@ class ValveBank:
         known = [valve_numbers(valve) for valve in valves]
         return cls(*(np.array([getattr(valve, field.name) for valve in known]) for field in fields(cls)))
 
-
-@dataclass(frozen=True)
-class OpeningSlopes:
-    """Derivatives of the opening target by control vacuum, both flow-side vacuums [1/Pa] and the present opening [1]."""
-
-    by_control: FloatArray
-    by_a: FloatArray
-    by_b: FloatArray
-    by_opening: FloatArray
+    @cached_property
+    def per_span(self) -> _PerSpan:
+        """The numbers in opening spans, worked out once: the law is asked thousands of times."""
+        lift = self.sealing - 0.5
+        factors = (np.ones_like(lift), 0.5 * np.ones_like(lift), lift, self.hysteresis_Pa)
+        whole, half, lifted, held = (factor / self.opening_span_Pa for factor in factors)
+        return _PerSpan((self.threshold_Pa - lift * SIDE_BLEND_PA) * whole, whole, half, lifted, held)
 
 
 def valve_numbers(valve: Valve | ValveGeometry) -> Valve:
@@ -58,18 +77,18 @@ def opening_target(
     atmosphere the threshold rises by `sealing` per Pa on the other. With x = (control − threshold)/span held to [0, 1]
     the target is x² (3 − 2x). The membrane follows it with the time constant `travel_s`; `conductance_share` adds the leak.
     """
+    per = bank.per_span
     difference = flow_vac_a - flow_vac_b
-    apart = np.sqrt(difference * difference + SIDE_BLEND_PA**2)
-    lift = bank.sealing - 0.5
-    threshold = bank.threshold_Pa + 0.5 * (flow_vac_a + flow_vac_b) + lift * (apart - SIDE_BLEND_PA)
-    raised = control_vac - threshold + bank.hysteresis_Pa * opening
-    x = np.minimum(np.maximum(raised / bank.opening_span_Pa, 0.0), 1.0)
-    by_control = 6.0 * x * (1.0 - x) / bank.opening_span_Pa
-    tilt = lift * difference / apart
-    slopes = OpeningSlopes(
-        by_control, -by_control * (0.5 + tilt), -by_control * (0.5 - tilt), by_control * bank.hysteresis_Pa
-    )
-    return x * x * (3.0 - 2.0 * x), slopes
+    apart = np.hypot(difference, SIDE_BLEND_PA)
+    x = control_vac * per.control - per.threshold - (flow_vac_a + flow_vac_b) * per.half - apart * per.lift
+    x += opening * per.hysteresis
+    np.maximum(x, 0.0, out=x)
+    np.minimum(x, 1.0, out=x)
+    square = x * x
+    sloped = 6.0 * (x - square)  # d target/dx
+    common, tilted = sloped * per.half, sloped * per.lift * difference / apart
+    slopes = OpeningSlopes(sloped * per.control, -common - tilted, tilted - common, sloped * per.hysteresis)
+    return square * (3.0 - 2.0 * x), slopes
 
 
 def conductance_share(opening: FloatArray, bank: ValveBank) -> FloatArray:
