@@ -12,6 +12,7 @@ from gaitlab.air.gas import AIR_GAMMA, Gas
 from gaitlab.air.section import Section
 
 GAMMA = AIR_GAMMA
+LEAST_MACH = 1e-14  # below the choking inlet Mach number of 1 µm bore over 100 m
 ROOT_TOLERANCE = 1e-13  # relative, of the Mach numbers; chosen by us
 
 
@@ -88,7 +89,7 @@ def choking_mach(section: Section, p_up_Pa: float, gas: Gas) -> float:
         mach = math.exp(log_mach)
         return fanno_number(mach) - _loss(section, mach, p_up_Pa, gas)
 
-    return math.exp(brentq(excess, math.log(1e-9), 0.0, xtol=ROOT_TOLERANCE, rtol=ROOT_TOLERANCE))
+    return math.exp(brentq(excess, math.log(LEAST_MACH), 0.0, xtol=ROOT_TOLERANCE, rtol=ROOT_TOLERANCE))
 
 
 def _stagnation(mach: float) -> float:

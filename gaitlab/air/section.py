@@ -20,6 +20,7 @@ DEVELOPING_ASPECT = (0.0, 0.2, 0.5, 1.0)
 DEVELOPING_K = (0.674, 0.931, 1.28, 1.43)
 DEVELOPING_C = (2.9e-5, 7.6e-5, 2.1e-4, 2.9e-4)
 ROUND_K, ROUND_C, ROUND_F_RE = 1.25, 2.12e-4, 16.0
+LEAST_HYDRAULIC_M = 1e-6  # some fifteen mean free paths of air at one atmosphere; chosen by us
 # Equivalent sand roughness of technically smooth walls; tables give 1.5 µm for drawn tubing and less for glass (White,
 # Fluid Mechanics, table 6.1). 1 µm is chosen by us for extruded tube and cast channels.
 SMOOTH_WALL_M = 1e-6
@@ -61,12 +62,15 @@ def rectangle_f_re(aspect: float) -> float:
 def section_of(duct: Duct, *, roughness_m: float = SMOOTH_WALL_M) -> Section:
     """Area, hydraulic diameter and friction constants of a square, rectangular or round duct.
 
-    Raises InputError where a size is not finite and above zero.
+    Raises InputError where a size is not finite and above zero, or the channel narrower than 1 µm.
     """
     _check_sizes(duct)
     if not (math.isfinite(roughness_m) and roughness_m >= 0):
         raise InputError(must("roughness_m", "finite and at least 0 m", roughness_m, "1 to 50 µm for printed channels"))
     smooth = _smooth_section(duct)
+    if smooth.hydraulic_m < LEAST_HYDRAULIC_M:
+        rule = f"at least {LEAST_HYDRAULIC_M * 1e6:g} µm in hydraulic diameter"
+        raise InputError(must("channel", rule, smooth.hydraulic_m, "air is no continuum in anything narrower"))
     return replace(smooth, roughness_m=roughness_m)
 
 

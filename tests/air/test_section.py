@@ -126,3 +126,8 @@ def test_negative_losses_and_roughness_are_refused() -> None:
         section_of(SquareDuct(1e-3, 10e-3, -0.1))
     with pytest.raises(InputError, match="roughness_m must be finite and at least 0"):
         section_of(SquareDuct(1e-3, 10e-3), roughness_m=-1e-6)
+
+
+def test_channels_narrower_than_a_micrometre_are_refused() -> None:
+    with pytest.raises(InputError, match="channel must be at least 1 µm in hydraulic diameter"):
+        section_of(RectDuct(1e-3, 0.4e-6, 10e-3))
