@@ -1,4 +1,4 @@
-"""Flow through one channel over the pressure behind it, with the point in question and where it chokes."""
+"""Pictures of the air side: flow through a channel over the pressure behind it, flow through a valve over its control."""
 
 from __future__ import annotations
 
@@ -67,3 +67,43 @@ def _point(ax: Axes, curve: DuctCurve) -> None:
         ha="right" if left else "left",
         color=INK,
     )
+
+
+@dataclass(frozen=True)
+class ValveCurve:
+    """Measured points and fitted curve: control vacuum [kPa], flow [L/min ANR]; `opening_kPa` from start to full opening."""
+
+    control_kPa: Sequence[float]
+    flow_L_min: Sequence[float]
+    fitted_kPa: Sequence[float]
+    fitted_L_min: Sequence[float]
+    opening_kPa: tuple[float, float]
+
+
+def valve_plot(curve: ValveCurve) -> Figure:
+    """Flow through a valve against its control vacuum, measured and fitted, with the range in which it opens shaded."""
+    with styled():
+        figure = new_figure(140, 92)
+        ax = figure.subplots()
+        ax.axvspan(*curve.opening_kPa, color=RULE, alpha=0.55, lw=0, label="opening")
+        ax.plot(curve.fitted_kPa, curve.fitted_L_min, color=BLUE, lw=2.2, label="fitted law")
+        ax.plot(
+            curve.control_kPa,
+            curve.flow_L_min,
+            ls="",
+            marker="o",
+            ms=6,
+            mfc="white",
+            mec=ORANGE,
+            mew=1.8,
+            label="measured",
+        )
+        ax.set_xlim(0.0, curve.fitted_kPa[-1])
+        ax.set_ylim(0.0, 1.15 * max(*curve.flow_L_min, *curve.fitted_L_min))
+        ax.set_xlabel("control vacuum (kPa gauge)")
+        ax.set_ylabel("flow (L/min ANR)")
+        start, end = curve.opening_kPa
+        ax.set_title(f"Membrane valve: opens from {start:.3g} to {end:.3g} kPa")
+        figure.legend(loc="outside lower center", ncols=3)
+        bare(ax, grid="both")
+    return figure

@@ -29,7 +29,7 @@ AMBER = "#e69f00"
 GREEN = "#009e73"
 SKY = "#56b4e9"
 PINK = "#cc79a7"
-SERIES = (BLUE, ORANGE, GREEN, PINK, AMBER, SKY)
+SERIES = (BLUE, AMBER, GREEN, SKY, ORANGE, PINK)  # neighbours differ in lightness too
 
 # Lightness falls evenly: chosen by us on the CIE L* of the five stops (96, 80, 61, 40, 20).
 VACUUM_STOPS = ("#f6f3ea", "#b5d0d2", "#6e9fb5", "#2f6690", "#12304f")

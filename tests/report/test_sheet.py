@@ -1,0 +1,190 @@
+"""The bench sheet is one A4 page whose text can be read back, row by row, and whose numbers are the run's."""
+
+from __future__ import annotations
+
+import dataclasses
+import json
+import math
+import re
+import subprocess
+from pathlib import Path
+
+import pytest
+from click.testing import CliRunner
+
+from gaitlab.cli.main import cli
+from gaitlab.errors import InputError
+from gaitlab.report.paper import broken, text_width_mm
+from gaitlab.report.run_folder import SavedRun, read_run
+from gaitlab.report.sheet import A4_MM, bench_sheet, sheet_files
+from gaitlab.report.sheet_content import sheet_content, tube_rows
+from gaitlab.report.words import number, reversed_text, speed_estimate
+from gaitlab.wiring.wiring import Wiring
+from tests.report import synthetic
+
+
+@pytest.fixture(scope="module")
+def run(run_folder: Path) -> SavedRun:
+    return read_run(run_folder)
+
+
+def _pdf_text(pdf: Path) -> str:
+    return subprocess.run(["pdftotext", "-layout", str(pdf), "-"], capture_output=True, text=True, check=True).stdout
+
+
+def _written(run: SavedRun, folder: Path) -> Path:
+    for path, content in sheet_files(run, folder / "sheet.pdf").items():
+        path.write_bytes(content)
+    return folder / "sheet.pdf"
+
+
+def test_one_page_of_a4(run: SavedRun, tmp_path: Path) -> None:
+    told = subprocess.run(["pdfinfo", str(_written(run, tmp_path))], capture_output=True, text=True, check=True).stdout
+    assert re.search(r"Pages:\s+1\b", told)
+    assert "(A4)" in told
+    assert (tmp_path / "sheet.png").stat().st_size > 50_000
+
+
+def test_its_text_holds_every_row_of_the_wiring(run: SavedRun, tmp_path: Path) -> None:
+    text = _pdf_text(_written(run, tmp_path))
+    for inlet, source in run.best.wiring.pairs:
+        length = next(row.length_m for row in tube_rows(run) if row.inlet == inlet)
+        assert re.search(rf"output {source}\s+{inlet}\s+{length * 1e3:.0f}\s", text), (inlet, source)
+
+
+def test_its_text_holds_cautions_orientation_and_interval(run: SavedRun, tmp_path: Path) -> None:
+    text = " ".join(_pdf_text(_written(run, tmp_path)).split())
+    for words in (
+        "implode",
+        "Compressed air",
+        "Blades and needles",
+        "Silicone",
+        "solvents",
+        "Hot pumps",
+        "estimates",
+        "Local codes",
+    ):
+        assert words in text
+    assert "walks on the spot: 1.3 mm per period instead of 11.2" in text
+    assert "12.1 mm/s, likely 9.0 to 14.7" in text
+
+
+def test_the_same_run_gives_the_same_bytes(run: SavedRun) -> None:
+    assert sheet_files(run, Path("a.pdf")) == sheet_files(run, Path("a.pdf"))
+
+
+def test_cut_lengths_are_the_files_rule_rounded_up(run: SavedRun) -> None:
+    """Straight distance from the manifold times slack plus extra: 70.4 mm · 1.3 + 15 mm for the outer legs."""
+    outer = 1.3 * math.hypot(68.0, 12.0 + 6.0) + 15.0
+    row = next(row for row in tube_rows(run) if row.inlet == "a")
+    assert row.length_m * 1e3 == pytest.approx(math.ceil(outer))
+
+
+def test_phase_and_swing_are_the_rings(run: SavedRun) -> None:
+    row = next(row for row in tube_rows(run) if row.source == 2)
+    assert row.phase == pytest.approx(0.6)
+    assert row.delay_s == pytest.approx(0.6 * synthetic.PERIOD_S)
+    assert (row.least_Pa, row.peak_Pa) == pytest.approx((run.ring.least_vacuum_Pa[1], run.ring.peak_vacuum_Pa[1]))
+
+
+def test_inlets_on_atmosphere_and_supply_come_last(run: SavedRun) -> None:
+    wiring = Wiring.of({"a": "open", "b": 2, "c": "held", "d": 5, "e": 3})
+    rows = tube_rows(dataclasses.replace(run, ranking=(dataclasses.replace(run.best, wiring=wiring),)))
+    assert [row.source for row in rows] == [2, 3, 5, "held", "open"]
+    assert rows[3].peak_Pa == run.ring.supply_mean_Pa and rows[4].peak_Pa == 0.0
+
+
+def test_everything_stays_on_the_paper(run: SavedRun) -> None:
+    figure = bench_sheet(run)
+    figure.draw_without_rendering()
+    renderer = figure.canvas.get_renderer()
+    for text in figure.axes[0].texts:
+        box = text.get_window_extent(renderer).transformed(figure.transFigure.inverted())
+        assert min(box.x0, box.y0) > 0.0 and max(box.x1, box.y1) < 1.0, text.get_text()
+    assert figure.get_size_inches() * 25.4 == pytest.approx(A4_MM)
+
+
+@pytest.mark.parametrize(
+    ("travel_m", "words"),
+    [
+        (0.001, "walks on the spot"),
+        (-0.0015, "walks on the spot"),
+        (-0.005, "walks backwards"),
+        (0.006, "much slower"),
+        (0.011, "much the same speed"),
+        (math.nan, "does not walk (fell over)"),
+    ],
+)
+def test_the_reversed_wave_in_words(run: SavedRun, travel_m: float, words: str) -> None:
+    backwards = dataclasses.replace(synthetic.walk(), travel_m=travel_m, outcome="fell_over")
+    assert words in reversed_text(dataclasses.replace(run.best, reversed_walk=backwards))
+
+
+def test_a_reverse_that_was_not_walked_is_not_invented(run: SavedRun) -> None:
+    assert "was not walked" in reversed_text(dataclasses.replace(run.best, reversed_walk=None))
+
+
+def test_without_a_spread_the_interval_is_the_engines_doubt(run: SavedRun) -> None:
+    estimate = speed_estimate(dataclasses.replace(run, spread=None))
+    assert estimate is not None
+    low, middle, high = estimate.speed_m_s
+    assert middle == pytest.approx(0.0112 / 0.9)
+    assert (low / middle, high / middle) == pytest.approx((0.75, 1.25))
+    assert "engine" in estimate.basis
+
+
+def test_long_and_odd_names_fit(run: SavedRun, tmp_path: Path) -> None:
+    name = "crawler $\\frac{ " + 40 * "very long " + "<b>"
+    robot = dataclasses.replace(run.robot, name=name)
+    pdf = _written(dataclasses.replace(run, robot=robot), tmp_path)
+    assert "crawler $\\frac{ very long" in _pdf_text(pdf)
+
+
+def test_text_is_broken_by_measured_width() -> None:
+    lines = broken("the quick brown fox jumps over the lazy dog " * 3, 40.0, 8.0)
+    assert " ".join(lines).split() == ("the quick brown fox jumps over the lazy dog " * 3).split()
+    assert max(text_width_mm(line, 8.0) for line in lines) <= 40.0
+    assert len(broken("x" * 300, 40.0, 8.0)) > 5
+
+
+@pytest.mark.parametrize(("value", "text"), [(-0.04, "0.0"), (math.inf, "–"), (12.35, "12.3"), (-3.0, "−3.0")])
+def test_numbers_in_words(value: float, text: str) -> None:
+    assert number(value) == text
+
+
+def test_the_content_counts_every_stage(run: SavedRun) -> None:
+    content = sheet_content(run)
+    assert "1 → 2 → 3 → 4 → 5 → 1" in content.orientation[0]
+    assert len(content.assembly) == 6 and len(content.faults) == 6
+
+
+def test_a_wrong_ending(run: SavedRun) -> None:
+    with pytest.raises(InputError, match=r"must be named \.pdf, got 'sheet.txt'"):
+        sheet_files(run, Path("sheet.txt"))
+
+
+def test_the_command_writes_once_and_prints_json(own_folder: Path) -> None:
+    first = CliRunner().invoke(cli, ["sheet", str(own_folder), "--json"])
+    assert first.exit_code == 0, first.output
+    told = json.loads(first.stdout)
+    assert told["wiring"] == synthetic.BEST.as_dict()
+    assert [row["source"] for row in told["tubes"]] == [1, 2, 3, 4, 5]
+    assert (own_folder / "sheet.pdf").is_file() and (own_folder / "sheet.png").is_file()
+    second = CliRunner().invoke(cli, ["sheet", str(own_folder)])
+    assert second.exit_code == 2 and "--force" in second.output
+    third = CliRunner().invoke(cli, ["sheet", str(own_folder), "--force"])
+    assert third.exit_code == 0 and "walks on the spot" in third.output
+
+
+def test_the_command_refuses_a_folder_without_a_run(tmp_path: Path) -> None:
+    result = CliRunner().invoke(cli, ["sheet", str(tmp_path)])
+    assert result.exit_code == 2 and "holds no run" in result.output
+    assert list(tmp_path.iterdir()) == []
+
+
+@pytest.mark.parametrize("out", ["sheet.txt", "none/sheet.pdf", "x" * 300 + ".pdf"])
+def test_the_command_refuses_names_that_are_none(own_folder: Path, tmp_path: Path, out: str) -> None:
+    before = sorted(tmp_path.rglob("*"))
+    result = CliRunner().invoke(cli, ["sheet", str(own_folder), "--out", f"{tmp_path}/{out}"])
+    assert result.exit_code == 2, result.output
+    assert sorted(tmp_path.rglob("*")) == before
