@@ -21,6 +21,7 @@ OFF_MIDDLE = 0.2  # of a swing that the level may be off its middle: moving it m
 # SLOW_LEAST full swings; the clock is moved by the periods after which SLOW_LEFT full swings are left. All chosen by us.
 SLOW_FROM, SLOW_TO, SLOW_STEADY = 0.6, 0.995, 0.05
 SLOW_LEAST, SLOW_LEFT = 2e-3, 5e-3
+TIGHTEST = 1e-8  # error of a step, in full swings, below which rounding takes over
 STILL = 1e-6  # full swings per characteristic time that count as standing still
 KICKS_MAX, KICK = 3, 1e-2  # how often, and by how many full swings, a ring balanced on a ridge is moved off it
 
@@ -63,9 +64,10 @@ class Cycle:
         )
         rest = 1.0 - theta
         values = before * rest + theta * (after + rest * (third + theta * fourth))
-        return np.asarray(values - np.mod(phase, 1.0)[:, None] * self._jump())
+        return np.asarray(values - np.mod(phase, 1.0)[:, None] * self.jump())
 
-    def _jump(self) -> FloatArray:
+    def jump(self) -> FloatArray:
+        """What each unknown has changed by over the period; next to nothing where it closes."""
         first, last = self.steps[0], self.steps[-1]
         begin = first.state((self.start_s - first.start_s) / first.length_s)
         end = last.state((self.start_s + self.period_s - last.start_s) / last.length_s)
@@ -110,7 +112,7 @@ class _Run:
         self.scale, self.pace = circuit.scale(), characteristic_time(circuit)
         self.state, self.time, self.length = start, 0.0, 1e-2 * self.pace
         self.cuts_s: list[float] = []
-        self.level = self.low = self.high = _first_level(circuit)
+        self.level = self.low = self.high = first_level(circuit)
         self.kind, self.kicks = "going", 0
         self.cycle: Cycle | None = None
         self.drift = self.ratio = 0.0
@@ -137,12 +139,13 @@ class _Run:
     def close(self) -> None:
         """Tight periods from the last cut until one closes, the level left alone; a ring that dies away goes on.
 
-        Where gaps shrink by a factor ρ a period, gap ρ/(1 − ρ) is left; that or the gap itself must be below `closed`.
+        Where gaps shrink by a factor ρ a period, gap ρ/(1 − ρ) is left; that or the gap itself must be below `closed`. Gaps
+        that do not shrink are the integrator's own noise: it is run more tightly then.
         """
-        gap = 0.0
+        gap, tolerance = 0.0, self.settings.tight
         while self.kind == "near":
             start_s, start = self.time, self.state
-            kept = self._one_period()
+            kept = self._one_period(tolerance)
             before, gap = gap, self._apart(start)
             if self.kind != "near" or self._skipped(start, self.settings.closed):
                 break
@@ -151,10 +154,12 @@ class _Run:
                 self.cycle = Cycle(start_s, self.time - start_s, tuple(kept), gap)
             elif len(self.cuts_s) >= 2 * self.settings.cuts_max:
                 self.kind = "wandering"
+            elif 0.0 < before < 2.0 * gap:
+                tolerance = max(TIGHTEST, 0.25 * tolerance)
 
-    def _one_period(self) -> list[Step]:
+    def _one_period(self, tolerance: float) -> list[Step]:
         """The steps to the next cut; if the ring stands still instead, the run is sent back on its way (`kind`)."""
-        self._restart(self.settings.tight)
+        self._restart(tolerance)
         kept: list[Step] = []
         while True:
             kept.append(next(self.stream))
@@ -179,15 +184,9 @@ class _Run:
 
     def _cut(self, step: Step) -> float | None:
         """Fraction of the step at which output 1's pressure falls through the level, or None."""
-        before, after = float(step.before[0]), float(step.after[0])
+        after = float(step.after[0])
         self.low, self.high = min(self.low, after), max(self.high, after)
-        if not before > self.level >= after:
-            return None
-        left, right = 0.0, 1.0
-        for _ in range(BISECTIONS):
-            middle = 0.5 * (left + right)
-            left, right = (middle, right) if step.component(0, middle) > self.level else (left, middle)
-        return right
+        return cut_fraction(step, self.level)
 
     def _moved_to(self, step: Step, theta: float) -> None:
         self.state, self.time, self.length = step.state(theta), step.start_s + theta * step.length_s, step.length_s
@@ -264,6 +263,17 @@ class _Run:
         self._restart(self.settings.loose)
 
 
+def cut_fraction(step: Step, level: float) -> float | None:
+    """Fraction of a step at which output 1's pressure falls through `level` (its vacuum rises), or None."""
+    if not float(step.before[0]) > level >= float(step.after[0]):
+        return None
+    left, right = 0.0, 1.0
+    for _ in range(BISECTIONS):
+        middle = 0.5 * (left + right)
+        left, right = (middle, right) if step.component(0, middle) > level else (left, middle)
+    return right
+
+
 def stable(circuit: Circuit, state: FloatArray) -> bool:
     """Whether small changes of a resting state die out: no eigenvalue of the Jacobian has a positive real part."""
     matrix = circuit.network.linearised(state).matrix()[:-1, :-1]
@@ -284,7 +294,7 @@ def nudged(circuit: Circuit, state: FloatArray, size: float) -> FloatArray:
     return moved
 
 
-def _first_level(circuit: Circuit) -> float:
+def first_level(circuit: Circuit) -> float:
     """Where output 1 must pass for the ring to run at all: the middle of its valve's opening span."""
     valve = circuit.valves[1 % len(circuit.valves)]
     return circuit.gas.pressure_Pa - valve.threshold_Pa - 0.5 * valve.opening_span_Pa

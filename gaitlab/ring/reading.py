@@ -31,7 +31,7 @@ def oscillating_run(circuit: Circuit, run: Settled, cycle: Cycle) -> RingRun:
         start_up_s=start_up(run.cuts_s, cycle.period_s),
         supply_mean_Pa=float(supply.mean()),
         supply_min_Pa=float(supply.min()),
-        air_kg_per_period=cycle.period_s * float(pumped(circuit, states).mean()),
+        air_kg_per_period=drawn_air(circuit, cycle, states),
         harmonic=measures.harmonic(phase),
         output_vacuum_Pa=output,
         supply_vacuum_Pa=supply,
@@ -77,6 +77,12 @@ def vacuums(circuit: Circuit, states: FloatArray) -> tuple[FloatArray, FloatArra
     output, _, content, manifold, volume = circuit.network.split(states)
     bellows = circuit.network.chambers.pressures(content)
     return ambient - output.T, ambient - bellows.T, ambient - manifold / volume
+
+
+def drawn_air(circuit: Circuit, cycle: Cycle, states: FloatArray) -> float:
+    """Air [kg] that the stages give the supply in one period: what the source pumps, or what a barrel gains."""
+    gained = float(cycle.jump()[-2]) / circuit.gas.RT
+    return gained + cycle.period_s * float(pumped(circuit, states).mean())
 
 
 def pumped(circuit: Circuit, states: FloatArray) -> FloatArray:

@@ -10,14 +10,17 @@ from scipy.interpolate import CubicSpline
 
 from gaitlab.ring.circuit import Circuit, circuit_of_pattern
 from gaitlab.ring.pattern import LoadPattern, Placement, placed_pattern
-from gaitlab.ring.periodic import Settings, nudged, settled
+from gaitlab.ring.periodic import Settings, Settled, nudged, settled
 from gaitlab.ring.reading import oscillating_run, resting_run
-from gaitlab.ring.verdict import margins, rest_outcome, run_outcome, travelling_edges
+from gaitlab.ring.stroke import StrokeRun, stroke_run
+from gaitlab.ring.verdict import REMEDIES, SHORT_STROKE, margins, rest_outcome, run_outcome, travelling_edges
 from gaitlab.ring.waves import FloatArray, RingRun, Waves
+from gaitlab.robot.circuit import Syringe
 from gaitlab.robot.records import Robot
 from gaitlab.wiring.wiring import HELD, OPEN, Source, Wiring
 
 START_NUDGE = 1e-2  # full swings: how unequal the outputs are at the start; real stages differ by more
+CYCLES_LEAST = 3  # periods that a stroke must hold for its middle one to be called an oscillation (chosen by us)
 
 
 def ring_run(
@@ -45,7 +48,10 @@ def ring_run(
 def pattern_run(pattern: LoadPattern, *, settings: Settings = Settings()) -> RingRun:
     """The run of a load pattern from rest, counted as the pattern counts; its waves are named output/place."""
     circuit = circuit_of_pattern(pattern)
-    return run_from(circuit, nudged(circuit, circuit.rest(), START_NUDGE), settings=settings)
+    start = nudged(circuit, circuit.rest(), START_NUDGE)
+    if isinstance(pattern.supply, Syringe):
+        return stroke_record(circuit, stroke_run(circuit, start))
+    return run_from(circuit, start, settings=settings)
 
 
 def run_from(circuit: Circuit, start: FloatArray, *, settings: Settings = Settings()) -> RingRun:
@@ -59,6 +65,22 @@ def run_from(circuit: Circuit, start: FloatArray, *, settings: Settings = Settin
     run = oscillating_run(circuit, followed, followed.cycle)
     outcome, remedy = run_outcome(circuit, run)
     return replace(run, outcome=outcome, remedy=remedy, details=margins(circuit, run))
+
+
+def stroke_record(circuit: Circuit, stroke: StrokeRun) -> RingRun:
+    """A syringe's run as one period, that in the middle of the stroke, with the whole stroke's figures in `details`."""
+    whole = Settled("periodic" if stroke.cycles else "rest", stroke.cuts_s, stroke.end)
+    if len(stroke.cycles) < CYCLES_LEAST:
+        return resting_run(circuit, whole, outcome=SHORT_STROKE, remedy=REMEDIES[SHORT_STROKE])
+    middle = stroke.cycles[len(stroke.cycles) // 2]
+    run = oscillating_run(circuit, whole, middle)
+    outcome, remedy = run_outcome(circuit, run)
+    details = (
+        ("periods_per_stroke", stroke.periods_per_stroke),
+        ("dies_at_s", stroke.cuts_s[-1]),
+        ("dies_at_supply_Pa", stroke.supply_Pa[-1]),
+    )
+    return replace(run, outcome=outcome, remedy=remedy, start_up_s=stroke.cuts_s[0], details=details + margins(circuit, run))
 
 
 def placed(run: RingRun, placement: Placement, robot: Robot, wiring: Wiring) -> RingRun:

@@ -15,6 +15,7 @@ from gaitlab.ring.waves import FloatArray, RingRun
 
 OSCILLATES, HIGHER_HARMONIC = "oscillates", "higher_harmonic"
 LATCHES, SETTLES, TOO_WEAK, STARVES, WANDERS = "latches", "settles", "too_weak", "starves", "wanders"
+SHORT_STROKE = "short_stroke"
 
 REMEDIES = {
     OSCILLATES: "",
@@ -27,6 +28,8 @@ REMEDIES = {
     "(lower threshold or sealing) or a tighter one (less leak)",
     STARVES: "the ring draws the manifold down until it stops or loses its order; use a stronger pump or larger resistors "
     "(gaitlab supply names the smallest free flow that keeps it alive)",
+    SHORT_STROKE: "the syringe's stroke does not carry the ring through three periods; use a longer stroke, less dead "
+    "volume or a smaller load",
     WANDERS: "no steady period was found; look for stages that differ a lot or loads far larger than the rest",
 }
 

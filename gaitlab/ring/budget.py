@@ -1,0 +1,114 @@
+"""The air budget: what the ring draws, where that puts the pump, and the smallest pump that keeps the ring alive."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from gaitlab.air.gas import DENSITY_ANR_KG_M3, gas_of
+from gaitlab.air.supply import FixedLaw, SyringeLaw, supply_law
+from gaitlab.errors import InputError, must
+from gaitlab.ring.pattern import LoadPattern
+from gaitlab.ring.periodic import Settings
+from gaitlab.ring.solve import pattern_run
+from gaitlab.ring.verdict import OSCILLATES
+from gaitlab.ring.waves import FloatArray, RingRun
+from gaitlab.robot.circuit import FixedVacuum, Pump, PumpTable, Supply, Syringe
+
+CLOSE = 0.02  # of the free flow: how well the smallest pump is found (chosen by us; flows are uncertain by more)
+ASSUMED_FREE_M3_S = 1e-3 / 6.0  # 10 L/min, where the file has no pump yet; only the start of a search
+ASSUMED_BUFFER_M3 = 50e-6
+WIDEST = 2.0**12  # span of free flows searched, from the first guess, each way
+PATIENT = Settings(cuts_max=25)  # a pump at its limit is not waited for longer
+
+
+@dataclass(frozen=True)
+class AirBudget:
+    """Mean draw [kg/s], mean and least gauge vacuum [Pa] it leaves, and the least free flow [m³/s] that keeps the ring alive.
+
+    `smallest_m3_s` is nan for a syringe, and where no pump of that dead end does.
+    """
+
+    flow_kg_s: float
+    working_Pa: float
+    least_Pa: float
+    alive: bool
+    smallest_m3_s: float
+
+    @property
+    def flow_m3_s_ANR(self) -> float:
+        """Mean draw as free air in the ISO 8778 reference atmosphere."""
+        return self.flow_kg_s / DENSITY_ANR_KG_M3
+
+
+def air_budget(pattern: LoadPattern, run: RingRun) -> AirBudget:
+    """The budget of a solved load pattern; the smallest pump has the file's dead end, curve law and buffer."""
+    smallest = float("nan") if isinstance(pattern.supply, Syringe) else smallest_free_flow(pattern)
+    alive = run.outcome == OSCILLATES
+    flow = run.air_kg_per_period / run.period_s if alive else float("nan")
+    return AirBudget(flow, run.supply_mean_Pa, run.supply_min_Pa, alive, smallest)
+
+
+def smallest_free_flow(pattern: LoadPattern) -> float:
+    """Least free flow [m³/s] of a pump like the file's on which the ring oscillates; nan if none within WIDEST does.
+
+    A house line is answered by a pump of that dead end, mass flow linear, with ASSUMED_BUFFER_M3.
+    """
+    if isinstance(pattern.supply, Syringe):
+        raise InputError(must("supply", "a pump, a pump table or a house line", "a syringe"))
+
+    def alive(factor: float) -> bool:
+        run = pattern_run(replace(pattern, supply=scaled(pattern.supply, factor)), settings=PATIENT)
+        return run.outcome == OSCILLATES
+
+    low, high = _bracket(alive)
+    while high / low > 1.0 + CLOSE:
+        middle = float(np.sqrt(low * high))
+        low, high = (low, middle) if alive(middle) else (middle, high)
+    return high * free_flow(pattern.supply)
+
+
+def _bracket(alive: Callable[[float], bool]) -> tuple[float, float]:
+    """Two factors a factor of two apart, the lower dead, the upper alive; nan where there are none."""
+    factor = 1.0
+    up = not alive(factor)
+    while 1.0 / WIDEST < factor < WIDEST:
+        factor = factor * 2.0 if up else factor / 2.0
+        if alive(factor) is up:
+            return (factor / 2.0, factor) if up else (factor, factor * 2.0)
+    return float("nan"), float("nan")
+
+
+def free_flow(supply: Supply) -> float:
+    """Free flow [m³/s] of a supply's pump, or of the one assumed for a house line."""
+    if isinstance(supply, Pump):
+        return supply.free_flow_m3_s
+    return supply.table_flow_m3_s[0] if isinstance(supply, PumpTable) else ASSUMED_FREE_M3_S
+
+
+def scaled(supply: Supply, factor: float) -> Pump | PumpTable:
+    """A pump like this one with its free flow multiplied."""
+    if isinstance(supply, Pump):
+        return replace(supply, free_flow_m3_s=supply.free_flow_m3_s * factor)
+    if isinstance(supply, PumpTable):
+        return replace(supply, table_flow_m3_s=tuple(q * factor for q in supply.table_flow_m3_s))
+    assert isinstance(supply, FixedVacuum)
+    return Pump(supply.vacuum_Pa, ASSUMED_FREE_M3_S * factor, "mass", ASSUMED_BUFFER_M3)
+
+
+def demand(pattern: LoadPattern, vacuums_Pa: Sequence[float]) -> FloatArray:
+    """Mean draw [kg/s] of the ring on house lines of these vacuums [Pa gauge]; nan where it does not run."""
+    runs = [pattern_run(replace(pattern, supply=FixedVacuum(float(v)))) for v in vacuums_Pa]
+    return np.array([r.air_kg_per_period / r.period_s if r.outcome == OSCILLATES else np.nan for r in runs])
+
+
+def pump_curve(pattern: LoadPattern, points: int = 60) -> tuple[FloatArray, FloatArray]:
+    """The pump's curve: gauge vacuum [Pa] up to its dead end, mass flow [kg/s]. Raises InputError for a supply without one."""
+    gas = gas_of(pattern.ambient)
+    law = supply_law(pattern.supply, gas)
+    if isinstance(law, FixedLaw | SyringeLaw):
+        raise InputError(must("supply", "a pump or a pump table", type(pattern.supply).__name__))
+    vacuum = np.linspace(0.0, gas.pressure_Pa - law.rest_Pa, points)
+    return vacuum, np.array([law.mass_flow(gas.pressure_Pa - float(v))[0] for v in vacuum])
