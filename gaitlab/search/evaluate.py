@@ -19,6 +19,7 @@ from gaitlab.wiring.wiring import Wiring
 
 WORKER_LOST = "worker_lost"
 REFUSED = "refused"
+BROKE_DOWN = "broke_down"
 
 
 @dataclass(frozen=True)
@@ -68,6 +69,31 @@ def evaluate(job: Job) -> Evaluation:
     except InputError as error:
         done = failed_walk(job, REFUSED, str(error))
     return Evaluation(done, time.perf_counter() - begin)
+
+
+@dataclass(frozen=True)
+class Guarded:
+    """An evaluation that always ends as a walk: what goes wrong inside becomes an outcome, so that one wiring cannot end a search.
+
+    No memory is nobody's fault: such a walk counts as ``worker_lost`` and --resume tries it again. Anything else is ``broke_down``.
+    """
+
+    evaluate: Evaluate
+
+    def __call__(self, job: Job) -> Evaluation:
+        """The job's evaluation, or its failure by name."""
+        begin = time.perf_counter()
+        try:
+            return self.evaluate(job)
+        except MemoryError:
+            done = failed_walk(
+                job, WORKER_LOST, "out of memory: close other programs or use fewer --workers, then --resume"
+            )
+        except Exception as error:
+            said = (str(error).splitlines() or [""])[0][:200]
+            remedy = f"{type(error).__name__}: {said}; `gaitlab walk --debug` with this wiring shows where"
+            done = failed_walk(job, BROKE_DOWN, remedy)
+        return Evaluation(done, time.perf_counter() - begin)
 
 
 @lru_cache(maxsize=4)

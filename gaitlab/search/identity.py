@@ -53,8 +53,16 @@ class Identity:
 
     def key(self, wiring: Wiring, settings: WalkSettings) -> str:
         """Name of one walk: the same for the same numbers, on any machine with the same code."""
-        parts = (self.robot_hash, self.code_version, _libraries(settings.engine), settings.text, settings.level)
-        return hashlib.sha256("\0".join((*parts, wiring.text())).encode()).hexdigest()
+        digest = _digest(self, settings).copy()
+        digest.update(wiring.text().encode())
+        return digest.hexdigest()
+
+
+@cache
+def _digest(identity: Identity, settings: WalkSettings) -> hashlib._Hash:
+    """The hash of all that the walks of one search have in common."""
+    parts = (identity.robot_hash, identity.code_version, _libraries(settings.engine), settings.text, settings.level)
+    return hashlib.sha256("".join(part + "\0" for part in parts).encode())
 
 
 @cache

@@ -9,7 +9,7 @@ from pathlib import Path
 from gaitlab.errors import RunFolderError
 from gaitlab.search.identity import Identity
 from gaitlab.search.ledger import Ledger
-from gaitlab.search.schema import SCHEMA, TABLES
+from gaitlab.search.schema import COLUMNS, SCHEMA, TABLES, checksum
 
 LEDGER_FILE = "ledger.sqlite"
 BUSY_S = 30.0  # how long to wait for another search's write; chosen by us
@@ -18,7 +18,7 @@ CHECKED_BYTES = 256 * 2**20  # larger files are not read through before use; cho
 
 def created(path: Path, identity: Identity) -> Ledger:
     """A new, empty ledger. Raises RunFolderError if there is one or the folder cannot be written."""
-    if path.exists():
+    if os.path.lexists(path):
         raise RunFolderError(
             f"{path} is there already; usual fix: go on with --resume, or choose another folder with --out"
         )
@@ -42,7 +42,7 @@ def reopened(path: Path, identity: Identity) -> Ledger:
 
     Raises RunFolderError, with nothing changed, when it belongs to another robot or to other code, is damaged or read-only.
     """
-    if not path.is_file():
+    if not os.path.isfile(path):
         raise RunFolderError(f"{path} is not there, so nothing can be resumed; usual fix: leave out --resume")
     if not (os.access(path, os.W_OK) and os.access(path.parent, os.W_OK)):
         raise RunFolderError(_read_only(path, "no right to write"))
@@ -53,6 +53,7 @@ def reopened(path: Path, identity: Identity) -> Ledger:
             f"{path} is an SQLite file but no ledger of gaitlab; usual fix: choose another folder with --out"
         )
     _refuse_others(path, found, _meta(identity))
+    _refuse_changed_rows(path)
     try:
         connection = _connected(path)
         connection.execute("BEGIN IMMEDIATE")
@@ -89,23 +90,46 @@ def _refuse_damage(path: Path) -> None:
         try:
             connection.execute("SELECT count(*) FROM sqlite_schema").fetchone()
             small = path.stat().st_size <= CHECKED_BYTES
-            verdict = connection.execute("PRAGMA quick_check(1)").fetchone()[0] if small else "ok"
+            verdict = connection.execute("PRAGMA integrity_check(1)").fetchone()[0] if small else "ok"
         finally:
             connection.close()
     except sqlite3.DatabaseError as error:
         verdict = str(error)
+    except (ValueError, TypeError) as error:  # text that is no UTF-8 any more
+        verdict = f"unreadable text: {error}"
     if verdict != "ok":
-        raise RunFolderError(
-            f"ledger {path} is damaged or no ledger ({verdict}); nothing was changed; "
-            "usual fix: keep the file aside and start anew with --out"
-        )
+        raise _damaged(path, verdict)
+
+
+def _refuse_changed_rows(path: Path) -> None:
+    """Compares every row with its checksum, in a ledger small enough to be read through."""
+    if path.stat().st_size > CHECKED_BYTES:
+        return
+    connection = sqlite3.connect(f"{path.absolute().as_uri()}?mode=ro", uri=True, timeout=BUSY_S)
+    try:
+        for number, (*values, kept) in enumerate(
+            connection.execute(f"SELECT {', '.join(COLUMNS)} FROM walks"), start=1
+        ):
+            if checksum(tuple(values)) != kept:
+                raise _damaged(path, f"walk {number} differs from its checksum")
+    except (sqlite3.DatabaseError, UnicodeError) as error:
+        raise _damaged(path, str(error)) from error
+    finally:
+        connection.close()
+
+
+def _damaged(path: Path, verdict: str) -> RunFolderError:
+    return RunFolderError(
+        f"ledger {path} is damaged or no ledger ({verdict}); nothing was changed; "
+        "usual fix: keep the file aside and start anew with --out"
+    )
 
 
 def _found_meta(path: Path) -> dict[str, str] | None:
     connection = sqlite3.connect(f"{path.absolute().as_uri()}?mode=ro", uri=True, timeout=BUSY_S)
     try:
         return dict(connection.execute("SELECT name, value FROM meta"))
-    except sqlite3.DatabaseError:
+    except (sqlite3.DatabaseError, UnicodeError):
         return None
     finally:
         connection.close()

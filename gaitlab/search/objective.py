@@ -35,15 +35,29 @@ def score_of(walk: Walk, objective: str) -> Score:
     L/2 [m], half a body length being what the ends sweep sideways (weights chosen by us). air: s/m_air [m/kg],
     the inverse of air per metre, negative for a robot that walks backwards. Raises KeyError for another name.
     """
-    travel, scatter = walk.travel_m, walk.travel_scatter_m
+    travel = walk.travel_m
     sideways = abs(walk.drift_m) + 0.5 * walk.body_length_m * abs(walk.turn_rad)
-    per_kg = 1.0 / (walk.air_kg_per_m * abs(travel)) if walk.air_kg_per_m and travel else math.nan
-    return {
-        "travel": Score(travel, scatter),
-        "speed": Score(travel / walk.period_s, scatter / walk.period_s),
-        "straight": Score(travel - sideways, scatter),
-        "air": Score(travel * abs(per_kg), scatter * abs(per_kg)),
+    air_kg = walk.air_kg_per_m * abs(travel)
+    value = {
+        "travel": travel,
+        "speed": travel / walk.period_s,
+        "straight": travel - sideways,
+        "air": travel / air_kg if air_kg else math.nan,
     }[objective]
+    return Score(value, scatter_of(objective, value, travel, walk.travel_scatter_m, walk.period_s))
+
+
+def scatter_of(objective: str, score: float, travel_m: float, scatter_m: float, period_s: float) -> float:
+    """The scatter that belongs to a score: the travel's, in the score's unit.
+
+    >>> scatter_of("speed", 0.01, 0.02, 0.001, 2.0)
+    0.0005
+    """
+    if objective == "speed":
+        return scatter_m / period_s
+    if objective == "air":
+        return scatter_m * abs(score / travel_m) if travel_m else math.nan
+    return scatter_m
 
 
 def tied(one: Score, other: Score) -> bool:

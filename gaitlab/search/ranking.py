@@ -2,13 +2,16 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from functools import cached_property
 from itertools import islice
+from typing import Any
 
 from gaitlab.gait.records import Walk
 from gaitlab.search.ledger import Ledger
-from gaitlab.search.objective import Score, score_of, tied
+from gaitlab.search.objective import Score, scatter_of, tied
 from gaitlab.search.schema import walk_from, wiring_from_ledger
 from gaitlab.search.settings import SETTLED, WalkSettings
 from gaitlab.wiring.smooth import SmoothWaves
@@ -28,7 +31,7 @@ CREATE TEMP TABLE places AS
 """
 
 PLACED = """
-SELECT p.rank, w.level, w.wiring, w.walk, r.rank, rw.walk
+SELECT p.rank, w.level, w.wiring, w.walk, w.{score}, w.travel_m, w.scatter_m, w.period_s, p.reversed, r.rank, rw.walk
 FROM places p JOIN walks w ON w.rowid = p.id
 LEFT JOIN places r ON r.wiring = p.reversed AND r.rank IS NOT NULL LEFT JOIN walks rw ON rw.rowid = r.id
 WHERE p.rank IS NOT NULL {only} ORDER BY p.rank
@@ -44,19 +47,30 @@ WHERE p.rank IS NULL ORDER BY p.wiring
 class Ranked:
     """One place of the ranking. `settled` is false for a wiring that was only screened by a short walk.
 
-    `smooth`: 1 or −1 for a smooth wave (see `SmoothWaves`), else 0. The reversed wave's fields are None where it was not walked.
+    `smooth`: 1 or −1 for a smooth wave (see `SmoothWaves`), else 0. `reversed_wiring` is None where the limits forbid it,
+    the reversed wave's other fields where it was not walked. Walks are kept as their JSON and read when asked for.
     """
 
     rank: int
     wiring: Wiring
-    walk: Walk
+    walk_json: str
     score: Score
     settled: bool
     tied_with_best: bool
     smooth: int
     reversed_wiring: Wiring | None
     reversed_rank: int | None
-    reversed_walk: Walk | None
+    reversed_walk_json: str | None
+
+    @cached_property
+    def walk(self) -> Walk:
+        """How it walked."""
+        return walk_from(self.walk_json)
+
+    @cached_property
+    def reversed_walk(self) -> Walk | None:
+        """How its reversed wave walked."""
+        return None if self.reversed_walk_json is None else walk_from(self.reversed_walk_json)
 
 
 @dataclass(frozen=True)
@@ -87,13 +101,11 @@ class Ranking:
         best: Score | None = None
         if only:
             best = next((place.score for place in self), None)
-        for rank, level, wiring, walk, reversed_rank, reversed_walk in self._ledger.select(
-            PLACED.format(only=only), values
-        ):
-            place = self._ranked(rank, level, wiring, walk, best)
+        query = PLACED.format(only=only, score=f"score_{self._objective}")
+        for values_of_place in self._ledger.select(query, values):
+            place = self._ranked(values_of_place, best)
             best = best or place.score
-            backwards = self._waves.space.reversed(place.wiring)
-            yield _with_reverse(place, backwards, reversed_rank, reversed_walk)
+            yield place
 
     def first(self, number: int) -> list[Ranked]:
         """The first places."""
@@ -132,24 +144,24 @@ class Ranking:
         query = "SELECT total(simulated_s) FROM walks WHERE settings = ?"
         return float(next(self._ledger.select(query, (self._settings.text,)))[0])
 
-    def _ranked(self, rank: int, level: str, wiring_text: str, walk_text: str, best: Score | None) -> Ranked:
-        wiring, walk = wiring_from_ledger(wiring_text), walk_from(walk_text)
-        score = score_of(walk, self._objective)
-        settled = level == SETTLED
+    def _ranked(self, values: tuple[Any, ...], best: Score | None) -> Ranked:
+        rank, level, text, walk, value, travel_m, scatter_m, period_s, backwards, reversed_rank, reversed_walk = values
+        score = self._score(value, travel_m, scatter_m, period_s)
+        settled, wiring = level == SETTLED, wiring_from_ledger(text)
         return Ranked(
             rank=rank,
             wiring=wiring,
-            walk=walk,
+            walk_json=walk,
             score=score,
             settled=settled,
             tied_with_best=settled and (best is None or tied(score, best)),
             smooth=self._waves.direction(wiring),
-            reversed_wiring=None,
-            reversed_rank=None,
-            reversed_walk=None,
+            reversed_wiring=None if backwards is None else wiring_from_ledger(backwards),
+            reversed_rank=reversed_rank,
+            reversed_walk_json=reversed_walk,
         )
 
-
-def _with_reverse(place: Ranked, backwards: Wiring | None, rank: int | None, walk_text: str | None) -> Ranked:
-    walk = None if walk_text is None else walk_from(walk_text)
-    return replace(place, reversed_wiring=backwards, reversed_rank=rank, reversed_walk=walk)
+    def _score(self, *values: float | None) -> Score:
+        """The score and its scatter from the row's numbers, null meaning nan."""
+        value, travel_m, scatter_m, period_s = (math.nan if v is None else v for v in values)
+        return Score(value, scatter_of(self._objective, value, travel_m, scatter_m, period_s))

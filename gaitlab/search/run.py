@@ -39,6 +39,14 @@ class SearchTask:
         """The robot's document as workers get it."""
         return json.dumps(self.document, sort_keys=True)
 
+    def lasting(self, periods: int | None) -> WalkSettings:
+        """The walk settings with another length, the same object for the same length."""
+        return self._lengths.setdefault(periods, self.settings.lasting(periods))
+
+    @cached_property
+    def _lengths(self) -> dict[int | None, WalkSettings]:
+        return {self.settings.periods: self.settings}
+
     @classmethod
     def of(
         cls,
@@ -89,7 +97,7 @@ def run_search(task: SearchTask, strategy: Strategy, ledger: Ledger, workers: Wo
 
 def job_of(task: SearchTask, ask: Ask) -> Job:
     """The evaluation that an ask wants."""
-    how = task.settings.lasting(ask.periods)
+    how = task.lasting(ask.periods)
     return Job(task.document_json, ask.wiring, how, task.identity.key(ask.wiring, how))
 
 

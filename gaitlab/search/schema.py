@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import math
+import zlib
 from dataclasses import dataclass
 from typing import Any
 
@@ -14,7 +15,7 @@ from gaitlab.search.evaluate import Evaluation, Job
 from gaitlab.search.objective import OBJECTIVES, score_of
 from gaitlab.wiring.wiring import HELD, OPEN, Wiring
 
-SCHEMA = 1  # raised when an older reader would misread the tables
+SCHEMA = 2  # raised when an older reader would misread the tables
 
 SCORED = "scored"
 FAILED = "failed"
@@ -35,7 +36,8 @@ CREATE TABLE walks (
     score_travel REAL, score_speed REAL, score_straight REAL, score_air REAL,
     simulated_s REAL NOT NULL,
     wall_s REAL NOT NULL,
-    walk TEXT NOT NULL
+    walk TEXT NOT NULL,
+    checksum INTEGER NOT NULL
 );
 CREATE INDEX walks_by_wiring ON walks (settings, level, wiring);
 CREATE TABLE equals (wiring TEXT PRIMARY KEY, equal_to TEXT NOT NULL) WITHOUT ROWID;
@@ -46,16 +48,16 @@ CREATE VIEW fates AS
 
 COLUMNS = (
     "key", "settings", "level", "wiring", "reversed", "status", "outcome", "remedy", "travel_m", "scatter_m", "period_s",
-    *(f"score_{objective}" for objective in OBJECTIVES), "simulated_s", "wall_s", "walk",
+    *(f"score_{objective}" for objective in OBJECTIVES), "simulated_s", "wall_s", "walk", "checksum",
 )  # fmt: skip
 
 
 def row_of(job: Job, done: Evaluation, backwards: Wiring | None) -> tuple[Any, ...]:
-    """The values of `COLUMNS` for one finished walk; what is not finite becomes null."""
+    """The values of `COLUMNS` for one finished walk; what is not finite becomes null. The last one is their checksum."""
     walk = done.walk
     measured = walk.outcome in MEASURED and math.isfinite(walk.travel_m)
     scores = [score_of(walk, objective).value if measured else None for objective in OBJECTIVES]
-    return (
+    values = (
         job.key,
         job.settings.text,
         job.settings.level,
@@ -66,10 +68,16 @@ def row_of(job: Job, done: Evaluation, backwards: Wiring | None) -> tuple[Any, .
         walk.remedy,
         *(_finite(v) for v in (walk.travel_m, walk.travel_scatter_m, walk.period_s)),
         *(_finite(v) for v in scores),
-        walk.simulated_s,
-        done.wall_s,
+        float(walk.simulated_s),
+        float(done.wall_s),
         json.dumps(record_to_json(walk), separators=(",", ":")),
     )
+    return (*values, checksum(values))
+
+
+def checksum(values: tuple[Any, ...]) -> int:
+    """CRC-32 of a row: SQLite notices broken pages but not a digit that changed inside a row."""
+    return zlib.crc32("\x1f".join(map(repr, values)).encode())
 
 
 def _finite(value: float | None) -> float | None:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from dataclasses import asdict, dataclass, replace
+from functools import cached_property
 
 SETTLED = "settled"
 SHORT_PERIODS = (
@@ -24,7 +25,7 @@ class WalkSettings:
     periods: int | None = None
     nudge_m: float = 0.0
 
-    @property
+    @cached_property
     def level(self) -> str:
         """How far the walk goes, in words: ``settled`` or ``2 periods``.
 
@@ -33,7 +34,7 @@ class WalkSettings:
         """
         return SETTLED if self.periods is None else f"{self.periods} periods"
 
-    @property
+    @cached_property
     def text(self) -> str:
         """Everything but the length, as JSON: walks are ranked among those of one such text."""
         return json.dumps(asdict(replace(self, periods=None)), sort_keys=True)

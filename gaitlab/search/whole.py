@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import time
 from collections.abc import Callable
 from dataclasses import dataclass
@@ -9,7 +10,7 @@ from pathlib import Path
 
 from gaitlab.errors import RunFolderError
 from gaitlab.robot.reader import RobotFile
-from gaitlab.search.evaluate import Evaluate, evaluate
+from gaitlab.search.evaluate import Evaluate, Guarded, evaluate
 from gaitlab.search.finals import Final, best_ring, finals_of, write_traces
 from gaitlab.search.ledger import Ledger
 from gaitlab.search.ledger_file import LEDGER_FILE, created, reopened
@@ -53,7 +54,7 @@ def search_robot(
     waves = SmoothWaves.of(task.robot, task.space)
     strategy = strategy_of(plan.choice, task.space, waves)
     with open_ledger(plan, task) as ledger:
-        workers = start_workers(evaluating)
+        workers = start_workers(Guarded(evaluating))
         try:
             finished = run_search(task, strategy, ledger, workers, watch)
             _note_equals(task, ledger)
@@ -78,7 +79,7 @@ def open_ledger(plan: SearchPlan, task: SearchTask) -> Ledger:
     """A new ledger in the plan's folder, or with `resume` the one that is there. Raises RunFolderError."""
     path = plan.folder / LEDGER_FILE
     if not plan.resume:
-        if plan.folder.exists() and not plan.folder.is_dir():
+        if os.path.exists(plan.folder) and not plan.folder.is_dir():
             raise RunFolderError(f"{plan.folder} is a file, not a folder; usual fix: choose another folder with --out")
         return created(path, task.identity)
     ledger = reopened(path, task.identity)

@@ -8,7 +8,7 @@ from itertools import islice
 from gaitlab.search.strategies.ask_tell import Ask, Reading
 from gaitlab.wiring.space import WiringSpace
 
-BATCH = 2048  # wirings held at a time; at a batch's end workers wait for the last walk, under 0.1 % of the time
+BATCH = 512  # wirings held at a time; at its end workers wait for the last walk, 0.1 % of the time of two; chosen by us
 
 
 class Exhaustive:
