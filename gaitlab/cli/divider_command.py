@@ -13,13 +13,10 @@ from gaitlab.cli.divider_ways import reading_from
 from gaitlab.cli.options import Number, json_option
 from gaitlab.cli.output import print_facts, print_json, warn
 from gaitlab.robot.fields import DM3_S_BAR, KELVIN_AT_ZERO_C, KILO, MILLI
+from gaitlab.trust.cautions import BENCH, ESTIMATES
 
 VACUUM = Number(above=0, below=2000)
 MG_PER_KG = 1e6
-CAUTION = (
-    "Vacuum can implode glass and thin plastic: use a vessel rated for it, wear eye protection, follow local rules. "
-    "All figures are estimates."
-)
 # What the inputs are called outside, by field of a reading.
 INPUT_NAMES = {
     "dead_end_Pa": "dead_end_gauge",
@@ -119,6 +116,8 @@ def _print_human(facts: dict[str, Any]) -> None:
             ("if it were laminar", f"{facts['laminar_kg_s_Pa2']:.4g} kg/(s Pa²)"),
         ]
     )  # fmt: skip
-    click.echo("The equivalent square assumes a sharp inlet; a rounded one passes up to 10 % more. " + CAUTION)
+    click.echo("The equivalent square assumes a sharp inlet; a rounded one passes up to 10 % more.")
+    click.echo(ESTIMATES)
+    click.echo(BENCH)
     for text in facts["warnings"]:
         warn(text)

@@ -97,6 +97,8 @@ def valve_plot(curve: ValveCurve) -> Figure:
             mec=ORANGE,
             mew=1.8,
             label="measured",
+            clip_on=False,
+            zorder=3,
         )
         ax.set_xlim(0.0, curve.fitted_kPa[-1])
         ax.set_ylim(0.0, 1.15 * max(*curve.flow_L_min, *curve.fitted_L_min))
