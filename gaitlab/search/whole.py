@@ -5,7 +5,7 @@ from __future__ import annotations
 import os
 import time
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from gaitlab.errors import RunFolderError
@@ -21,6 +21,7 @@ from gaitlab.search.run_record import FinalRings, RunFacts, write_run
 from gaitlab.search.strategies.choice import StrategyChoice, strategy_of
 from gaitlab.search.summary import SearchSummary, summary_of
 from gaitlab.search.workers import Workers
+from gaitlab.trust.finalists import Checked, FinalistPlan, Task, checked_finalists, checked_record
 from gaitlab.wiring.smooth import SmoothWaves
 
 RANKING_FILE = "ranking.csv"
@@ -29,12 +30,14 @@ EQUALS_NOTED_MAX = 10_000  # up to this many wirings the ledger also names every
 
 @dataclass(frozen=True)
 class SearchPlan:
-    """How to search: strategy, folder, whether to go on with what is there, and the command line for the record."""
+    """How to search: strategy, folder, whether to go on with what is there, the command line for the record, and how the
+    finalists are looked at again."""
 
     choice: StrategyChoice
     folder: Path
     resume: bool = False
     command: str = ""
+    finalists: FinalistPlan = FinalistPlan()
 
 
 def search_robot(
@@ -45,6 +48,7 @@ def search_robot(
     start_workers: Callable[[Evaluate], Workers],
     watch: Watch,
     evaluating: Evaluate = evaluate,
+    tell_check: Callable[[int], None] = lambda done: None,
 ) -> SearchSummary:
     """Searches the wirings of a robot and leaves ledger, ranking.csv, run.json and traces in the plan's folder.
 
@@ -60,6 +64,7 @@ def search_robot(
             _note_equals(task, ledger)
             ranking = Ranking(ledger, waves, task.objective, task.settings)
             finals, finished = _finals(task, ranking, workers, finished)
+            checked, finished = _checked(task, plan, ranking, workers, finished, tell_check)
         finally:
             workers.close()
         facts = RunFacts(
@@ -71,8 +76,8 @@ def search_robot(
             seed=plan.choice.seed,
             wall_s=time.perf_counter() - begin,
         )
-        _write(plan.folder, task, facts, ranking, finals)
-        return summary_of(task, facts, ranking, ledger, plan.folder)
+        _write(plan.folder, task, facts, ranking, finals, checked)
+        return replace(summary_of(task, facts, ranking, ledger, plan.folder), checked=checked)
 
 
 def open_ledger(plan: SearchPlan, task: SearchTask) -> Ledger:
@@ -108,8 +113,29 @@ def _finals(task: SearchTask, ranking: Ranking, workers: Workers, finished: bool
         return best_ring(task, best[0]), False
 
 
-def _write(folder: Path, task: SearchTask, facts: RunFacts, ranking: Ranking, finals: list[Final]) -> None:
+def _checked(
+    task: SearchTask,
+    plan: SearchPlan,
+    ranking: Ranking,
+    workers: Workers,
+    finished: bool,
+    tell: Callable[[int], None],
+) -> tuple[Checked | None, bool]:
+    """The finalists looked at again, where the plan asks for it; Ctrl-C leaves it out."""
+    best = [(p.wiring, p.walk) for p in ranking.first(plan.finalists.count) if p.settled]
+    if not finished or not best:
+        return None, finished
+    whose = Task(task.robot, task.document, task.settings, task.objective)
+    try:
+        return checked_finalists(whose, best, plan.finalists, workers, tell=tell), finished
+    except KeyboardInterrupt:
+        return None, False
+
+
+def _write(
+    folder: Path, task: SearchTask, facts: RunFacts, ranking: Ranking, finals: list[Final], checked: Checked | None
+) -> None:
     write_ranking(folder / RANKING_FILE, ranking, task.objective)
     rings = [final.ring for final in finals] + [None, None]
     write_traces(folder, finals)
-    write_run(folder, task, facts, ranking, FinalRings(rings[0], rings[1]))
+    write_run(folder, task, facts, ranking, FinalRings(rings[0], rings[1]), checked_record(checked))

@@ -21,6 +21,7 @@ from gaitlab.search.evaluate import WORKER_LOST, Evaluation, Job, failed_walk
 from gaitlab.search.identity import Identity
 from gaitlab.search.ledger_file import LEDGER_FILE, created, reopened
 from gaitlab.search.run import SearchTask
+from gaitlab.search.schema import SCHEMA
 from gaitlab.search.settings import WalkSettings
 from gaitlab.wiring.wiring import Wiring
 
@@ -132,7 +133,7 @@ def test_a_ledger_of_another_layout_is_refused(tmp_path: Path) -> None:
     created(path, TASK.identity).close()
     with sqlite3.connect(path) as connection:
         connection.execute("UPDATE meta SET value = '99' WHERE name = 'schema'")
-    with pytest.raises(RunFolderError, match="layout 99, this version writes layout 1"):
+    with pytest.raises(RunFolderError, match=f"layout 99, this version writes layout {SCHEMA}"):
         reopened(path, TASK.identity)
 
 
