@@ -38,6 +38,8 @@ MAY_IMPORT = {
         "ring.waves",
         "ring.sequence",
         "ring.tubing",
+        "air.gas",
+        "air.supply",
         "trust.speed",
         "trust.summary",
         "trust.sensitivity",

@@ -14,6 +14,7 @@ from gaitlab.report.animation import film_of, write_gif
 from gaitlab.report.body_path import body_path
 from gaitlab.report.footfall import footfall_chart
 from gaitlab.report.pressure_map import pressure_map
+from gaitlab.report.pump_plot import pump_working_point
 from gaitlab.report.ranking_plot import ranking_bars
 from gaitlab.report.run_folder import SavedRun, read_run
 from gaitlab.report.spread_plots import sensitivity_bars, spread_plot
@@ -33,9 +34,9 @@ class Drawn:
 def draw_run(folder: str | Path, *, svg: bool = False) -> Drawn:
     """Write every picture that the run in `folder` gives into the folder itself; pictures of the same name are replaced.
 
-    Always ranking.png, footfall.png and pressure_map.png; with traces path.png, best.gif and reversed.gif; with a spread
-    spread.png and sensitivities.png. `svg` writes the figures as SVG as well. Raises RunFolderError for a folder that
-    holds no readable run or takes no files.
+    Always ranking.png, footfall.png and pressure_map.png, and pump.png where the supply is a pump; with traces path.png,
+    best.gif and reversed.gif; with a spread spread.png and sensitivities.png. `svg` writes the figures as SVG as well.
+    Raises RunFolderError for a folder that holds no readable run or takes no files.
     """
     run = read_run(folder)
     figures = _figures(run)
@@ -59,6 +60,9 @@ def _figures(run: SavedRun) -> dict[str, Figure]:
         "footfall": footfall_chart(best.walk, best.reversed_walk, title=f"Footfalls of {best.wiring.text()}"),
         "pressure_map": pressure_map(run.ring.waves, wiring=best.wiring),
     }
+    pump = pump_working_point(run.robot, run.ring)
+    if pump is not None:
+        figures["pump"] = pump
     if run.trace is not None:
         figures["path"] = body_path(run.trace)
     if run.spread is not None:

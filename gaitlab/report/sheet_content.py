@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
+from gaitlab.report.pump_plot import L_MIN_ANR
 from gaitlab.report.run_folder import SavedRun
 from gaitlab.report.words import KPA, MM, number, reversed_text, source_text, speed_estimate, speed_text
 from gaitlab.ring.tubing import tube_lengths
@@ -13,7 +14,6 @@ from gaitlab.robot.circuit import FixedVacuum, Pump, PumpTable
 from gaitlab.robot.records import Robot
 
 CUT_STEP_M = 0.001  # tubes are cut to the millimetre
-L_MIN_ANR = 60e3 / 1.185  # L/min of ISO 8778 reference air (1.185 kg/m³ at 100 kPa, 20 °C, 65 %) per kg/s
 
 
 @dataclass(frozen=True)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import dataclasses
 import re
 from collections.abc import Callable
 from pathlib import Path
@@ -21,18 +22,8 @@ from gaitlab.report.run_folder import SavedRun, read_run
 from gaitlab.report.spread_plots import sensitivity_bars, spread_plot
 from gaitlab.report.style import SERIES, VACUUM_STOPS, save_figure
 from gaitlab.ring.waves import Waves
+from gaitlab.robot.circuit import FixedVacuum
 from tests.report import synthetic
-
-
-def _pump() -> Figure:
-    return pump_working_point(
-        curve_vacuum_Pa=(0.0, 57e3),
-        curve_flow_m3_s=(9 / 60e3, 0.0),
-        mean_vacuum_Pa=47e3,
-        least_vacuum_Pa=44e3,
-        mean_flow_m3_s=1.5 / 60e3,
-    )
-
 
 FIGURES: dict[str, Callable[[SavedRun], Figure]] = {
     "footfall": lambda run: footfall_chart(run.best.walk, run.best.reversed_walk),
@@ -41,7 +32,7 @@ FIGURES: dict[str, Callable[[SavedRun], Figure]] = {
     "ranking": lambda run: ranking_bars(run.ranking),
     "spread": lambda run: spread_plot(run.spread),
     "sensitivities": lambda run: sensitivity_bars(run.spread.sensitivities),
-    "pump": lambda run: _pump(),
+    "pump": lambda run: pump_working_point(run.robot, run.ring),
 }
 
 
@@ -131,8 +122,25 @@ def test_a_dollar_sign_is_a_dollar_sign(run_folder: Path, tmp_path: Path) -> Non
     assert save_figure(figure, tmp_path / "a.svg").read_text(encoding="utf-8").count("\\frac{") == 1
 
 
-def test_a_wrong_ending_and_a_missing_folder(tmp_path: Path) -> None:
+def test_the_working_point_lies_on_the_figures_of_the_run(run_folder: Path) -> None:
+    """12 mg in 0.9 s is 0.675 L/min of ISO 8778 air (1.185 kg/m³); the pump of the file ends at its dead end."""
+    run = read_run(run_folder)
+    ax = pump_working_point(run.robot, run.ring).axes[0]
+    point = next(line for line in ax.lines if line.get_marker() == "o")
+    assert point.get_xydata()[0] == pytest.approx([49.0, 12e-6 / 0.9 / 1.185 * 60e3])
+    curve = ax.lines[0].get_xydata()
+    assert curve[-1] == pytest.approx([run.robot.supply.dead_end_vacuum_Pa / 1e3, 0.0], abs=1e-9)
+    assert curve[0, 1] == pytest.approx(run.robot.supply.free_flow_m3_s * 60e3 * 1.2041 / 1.185, rel=1e-3)
+
+
+def test_a_house_line_has_no_pump_curve(run_folder: Path) -> None:
+    run = read_run(run_folder)
+    assert pump_working_point(dataclasses.replace(run.robot, supply=FixedVacuum(50e3)), run.ring) is None
+
+
+def test_a_wrong_ending_and_a_missing_folder(run_folder: Path, tmp_path: Path) -> None:
+    figure = spread_plot(read_run(run_folder).spread)
     with pytest.raises(InputError, match=r"must be .png, .svg or .pdf, got '.jpeg'"):
-        save_figure(_pump(), tmp_path / "a.jpeg")
+        save_figure(figure, tmp_path / "a.jpeg")
     with pytest.raises(RunFolderError, match="picture file must be writable"):
-        save_figure(_pump(), tmp_path / "none" / "a.png")
+        save_figure(figure, tmp_path / "none" / "a.png")

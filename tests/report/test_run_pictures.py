@@ -14,7 +14,7 @@ from gaitlab.report.run_pictures import draw_run
 def test_every_picture_of_a_full_run(own_folder: Path) -> None:
     drawn = draw_run(own_folder, svg=True)
     names = {file.name for file in drawn.files}
-    figures = ("ranking", "footfall", "pressure_map", "path", "spread", "sensitivities")
+    figures = ("ranking", "footfall", "pressure_map", "pump", "path", "spread", "sensitivities")
     assert names == {f"{name}{ending}" for name in figures for ending in (".png", ".svg")} | {
         "best.gif",
         "reversed.gif",

@@ -38,22 +38,27 @@ def _written(run: SavedRun, folder: Path) -> Path:
     return folder / "sheet.pdf"
 
 
-def test_one_page_of_a4(run: SavedRun, tmp_path: Path) -> None:
-    told = subprocess.run(["pdfinfo", str(_written(run, tmp_path))], capture_output=True, text=True, check=True).stdout
+@pytest.fixture(scope="module")
+def sheet(run: SavedRun, tmp_path_factory: pytest.TempPathFactory) -> Path:
+    return _written(run, tmp_path_factory.mktemp("sheet"))
+
+
+def test_one_page_of_a4(sheet: Path) -> None:
+    told = subprocess.run(["pdfinfo", str(sheet)], capture_output=True, text=True, check=True).stdout
     assert re.search(r"Pages:\s+1\b", told)
     assert "(A4)" in told
-    assert (tmp_path / "sheet.png").stat().st_size > 50_000
+    assert sheet.with_suffix(".png").stat().st_size > 50_000
 
 
-def test_its_text_holds_every_row_of_the_wiring(run: SavedRun, tmp_path: Path) -> None:
-    text = _pdf_text(_written(run, tmp_path))
+def test_its_text_holds_every_row_of_the_wiring(run: SavedRun, sheet: Path) -> None:
+    text = _pdf_text(sheet)
     for inlet, source in run.best.wiring.pairs:
         length = next(row.length_m for row in tube_rows(run) if row.inlet == inlet)
         assert re.search(rf"output {source}\s+{inlet}\s+{length * 1e3:.0f}\s", text), (inlet, source)
 
 
-def test_its_text_holds_cautions_orientation_and_interval(run: SavedRun, tmp_path: Path) -> None:
-    text = " ".join(_pdf_text(_written(run, tmp_path)).split())
+def test_its_text_holds_cautions_orientation_and_interval(sheet: Path) -> None:
+    text = " ".join(_pdf_text(sheet).split())
     for words in (
         "implode",
         "Compressed air",
@@ -69,8 +74,8 @@ def test_its_text_holds_cautions_orientation_and_interval(run: SavedRun, tmp_pat
     assert "12.1 mm/s, likely 9.0 to 14.7" in text
 
 
-def test_the_same_run_gives_the_same_bytes(run: SavedRun) -> None:
-    assert sheet_files(run, Path("a.pdf")) == sheet_files(run, Path("a.pdf"))
+def test_the_same_run_gives_the_same_bytes(run: SavedRun, sheet: Path) -> None:
+    assert sheet_files(run, sheet) == {path: path.read_bytes() for path in (sheet, sheet.with_suffix(".png"))}
 
 
 def test_cut_lengths_are_the_files_rule_rounded_up(run: SavedRun) -> None:
