@@ -4,13 +4,18 @@ from __future__ import annotations
 
 import math
 import os
+import signal
 import sys
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 from typing import Any
 
 import click
 
 from gaitlab.cli.options import (
+    Number,
+    WholeNumber,
     engine_option,
     json_option,
     out_option,
@@ -19,6 +24,7 @@ from gaitlab.cli.options import (
     workers_option,
 )
 from gaitlab.cli.output import Progress, print_facts, print_json, print_table, progress, warn
+from gaitlab.cli.spread_facts import checked_facts, print_checked
 from gaitlab.errors import GaitlabError, InputError, must
 from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import RobotFile, read_robot
@@ -33,6 +39,7 @@ from gaitlab.search.strategies.choice import STRATEGIES, StrategyChoice, strateg
 from gaitlab.search.summary import DONE, INTERRUPTED, TIE_RULE, SearchSummary
 from gaitlab.search.whole import SearchPlan, search_robot
 from gaitlab.search.workers import Workers, local_workers
+from gaitlab.trust.finalists import FinalistPlan, walks_needed
 from gaitlab.wiring.smooth import SmoothWaves
 
 SHOWN = 10  # places in the table; ranking.csv has all
@@ -61,6 +68,24 @@ EXIT_INTERRUPTED = 130
 @seed_option
 @engine_option
 @click.option(
+    "--finalists",
+    type=WholeNumber(0, 50),
+    default=3,
+    show_default=True,
+    help="How many of the best are walked again at half step, nudged and in the second engine; 0: none.",
+)
+@click.option("--robust", is_flag=True, help="Rank the finalists again over the build tolerances.")
+@click.option(
+    "--draws", type=WholeNumber(1, 10_000), default=32, show_default=True, help="Builds drawn with --robust."
+)
+@click.option(
+    "--quantile",
+    type=Number(at_least=0, at_most=1),
+    default=0.5,
+    show_default=True,
+    help="What --robust ranks on: 0.5 is the median build, 0.1 what nine builds of ten reach.",
+)
+@click.option(
     "--pictures/--no-pictures", default=True, show_default=True, help="Draw ranking, footfalls and film at the end."
 )
 @json_option
@@ -78,24 +103,49 @@ def command(robot_path: Path, as_json: bool, pictures: bool, **given: Any) -> No
     require_odd_ring(file.robot)
     task = _task(file, given)
     choice = StrategyChoice(given["strategy"] or file.robot.search.strategy, given["budget"], given["seed"])
-    plan = SearchPlan(choice, _folder(file, given["out"]), given["resume"], " ".join(["gaitlab", *sys.argv[1:]]))
+    plan = SearchPlan(
+        choice,
+        _folder(file, given["out"]),
+        given["resume"],
+        " ".join(["gaitlab", *sys.argv[1:]]),
+        _finalists(given),
+    )
+    again = walks_needed(plan.finalists, file.robot, task.settings, task.space.distinct)
     waves = SmoothWaves.of(file.robot, task.space)
     expected = strategy_of(choice, task.space, waves).expected()
-    with progress(expected, "walks") as bar:
+    with progress(expected, "walks") as bar, progress(again, "finalists again") as second_bar:
         summary = search_robot(
             file,
             task,
             plan,
             start_workers=lambda evaluate: _workers(evaluate, given),
             watch=_Watcher(bar, task.objective),
+            tell_check=second_bar.advance,
         )
     drawn = _drawn(plan.folder) if pictures and summary.best else ()
     _tell(summary, task, drawn, as_json)
 
 
+@contextmanager
+def _ended_like_ctrl_c() -> Iterator[None]:
+    """A polite `kill` (SIGTERM) ends a search as Ctrl-C does: with a ranking of what is known."""
+    before = signal.signal(signal.SIGTERM, signal.default_int_handler)
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGTERM, before)
+
+
 def _task(file: RobotFile, given: dict[str, Any]) -> SearchTask:
     objective = given["objective"] or file.robot.search.objective
     return SearchTask.of(file.document, file.robot, objective=objective, settings=WalkSettings(engine=given["engine"]))
+
+
+def _finalists(given: dict[str, Any]) -> FinalistPlan:
+    if given["robust"] and given["finalists"] == 0:
+        raise InputError(must("--finalists", "at least 1 with --robust", 0))
+    draws = given["draws"] if given["robust"] else 0
+    return FinalistPlan(given["finalists"], draws, given["quantile"], given["seed"])
 
 
 def _folder(file: RobotFile, out: Path | None) -> Path:
@@ -158,7 +208,8 @@ def _drawn(folder: Path) -> tuple[str, ...]:
 
 def _tell(summary: SearchSummary, task: SearchTask, drawn: tuple[str, ...], as_json: bool) -> None:
     if as_json:
-        print_json({**summary.facts, "files": list(drawn)})
+        checked = {} if summary.checked is None else checked_facts(summary.checked, task.objective)
+        print_json({**summary.facts, **checked, "files": list(drawn)})
     else:
         _print_human(summary, task)
     if summary.outcome != DONE:
@@ -182,6 +233,8 @@ def _print_human(summary: SearchSummary, task: SearchTask) -> None:
             ("folder", facts["folder"]),
         ]
     )
+    if summary.checked is not None:
+        print_checked(summary.checked, task.objective)
     click.echo(
         "A distance from a physics engine is an estimate, good to 20–30 %: trust the order more than the length."
     )

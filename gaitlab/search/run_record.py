@@ -44,8 +44,10 @@ class FinalRings:
     backwards: RingRun | None
 
 
-def write_run(folder: Path, task: SearchTask, facts: RunFacts, ranking: Ranking, rings: FinalRings) -> None:
-    """Writes `run.json` in one step."""
+def write_run(
+    folder: Path, task: SearchTask, facts: RunFacts, ranking: Ranking, rings: FinalRings, trust: dict[str, Any]
+) -> None:
+    """Writes `run.json` in one step; `trust` holds its keys `rechecks` and `spread`."""
     record = {
         "layout": LAYOUT,
         "gaitlab": __version__,
@@ -57,6 +59,7 @@ def write_run(folder: Path, task: SearchTask, facts: RunFacts, ranking: Ranking,
         "search": _search(task, facts, ranking),
         "ranking": [_place(place) for place in ranking.first(PLACES_KEPT)],
         "rings": {"best": record_to_json(rings.best), "reversed": record_to_json(rings.backwards)},
+        **trust,
     }
     with replaced_file(folder / RUN_FILE) as file:
         json.dump(record, file, allow_nan=False)

@@ -14,6 +14,7 @@ from gaitlab.search.ranking import Ranked, Ranking
 from gaitlab.search.ranking_table import SMOOTH_WORDS
 from gaitlab.search.run import SearchTask
 from gaitlab.search.run_record import PLACES_KEPT, RunFacts
+from gaitlab.trust.finalists import Checked
 
 DONE = "done"
 INTERRUPTED = "interrupted"
@@ -42,7 +43,7 @@ class Screening:
 
 @dataclass(frozen=True)
 class SearchSummary:
-    """The end of a search: outcome, facts for --json, the places worth showing."""
+    """The end of a search: outcome, facts for --json, the places worth showing, the finalists' second look where there was one."""
 
     outcome: str
     remedy: str
@@ -50,6 +51,7 @@ class SearchSummary:
     smooth: tuple[Ranked, ...]
     screening: Screening | None
     facts: dict[str, Any]
+    checked: Checked | None = None
 
     @property
     def best(self) -> Ranked | None:
