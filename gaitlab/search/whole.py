@@ -59,11 +59,12 @@ def search_robot(
     waves = SmoothWaves.of(task.robot, task.space)
     strategy = strategy_of(plan.choice, task.space, waves)
     # Workers first: a cluster that does not answer must not leave an empty ledger behind.
-    with closing(start_workers(evaluating)) as workers, open_ledger(plan, task) as ledger:
+    with closing(start_workers(Guarded(evaluating))) as workers, open_ledger(plan, task) as ledger:
         finished = run_search(task, strategy, ledger, workers, watch)
         _note_equals(task, ledger)
         ranking = Ranking(ledger, waves, task.objective, task.settings)
         finals, finished = _finals(task, ranking, workers, finished)
+        checked, finished = _checked(task, plan, ranking, workers, finished, tell_check)
         facts = RunFacts(
             robot_path=file.path.name,
             robot_text=file.text,
@@ -73,8 +74,8 @@ def search_robot(
             seed=plan.choice.seed,
             wall_s=time.perf_counter() - begin,
         )
-        _write(plan.folder, task, facts, ranking, finals)
-        return summary_of(task, facts, ranking, ledger, plan.folder)
+        _write(plan.folder, task, facts, ranking, finals, checked)
+        return replace(summary_of(task, facts, ranking, ledger, plan.folder), checked=checked)
 
 
 def open_ledger(plan: SearchPlan, task: SearchTask) -> Ledger:
