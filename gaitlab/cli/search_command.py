@@ -75,9 +75,7 @@ EXIT_INTERRUPTED = 130
     help="How many of the best are walked again at half step, nudged and in the second engine; 0: none.",
 )
 @click.option("--robust", is_flag=True, help="Rank the finalists again over the build tolerances.")
-@click.option(
-    "--draws", type=WholeNumber(1, 10_000), default=32, show_default=True, help="Builds drawn with --robust."
-)
+@click.option("--draws", type=WholeNumber(1, 10_000), default=32, show_default=True, help="Builds drawn with --robust.")
 @click.option(
     "--quantile",
     type=Number(at_least=0, at_most=1),
@@ -113,7 +111,7 @@ def command(robot_path: Path, as_json: bool, pictures: bool, **given: Any) -> No
     again = walks_needed(plan.finalists, file.robot, task.settings, task.space.distinct)
     waves = SmoothWaves.of(file.robot, task.space)
     expected = strategy_of(choice, task.space, waves).expected()
-    with progress(expected, "walks") as bar, progress(again, "finalists again") as second_bar:
+    with _ended_like_ctrl_c(), progress(expected, "walks") as bar, progress(again, "finalists again") as second_bar:
         summary = search_robot(
             file,
             task,
