@@ -36,7 +36,7 @@ def search(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> Any:
     def searching(*words: str, robot: str = ROW5, evaluating: Any = by_formula, out: str = "run") -> Finished:
         monkeypatch.setattr(search_command, "search_robot", partial(whole.search_robot, evaluating=evaluating))
         monkeypatch.setattr(whole, "finals_of", lambda task, best, workers: [])
-        return gaitlab("search", robot, "--no-pictures", "--out", str(tmp_path / out), *words)
+        return gaitlab("search", robot, "--no-pictures", "--finalists", "0", "--out", str(tmp_path / out), *words)
 
     return searching
 
