@@ -4,14 +4,14 @@ from __future__ import annotations
 
 import shutil
 import subprocess
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
 from PIL import Image
 
-from gaitlab.errors import InputError, must
+from gaitlab.errors import InputError, RunFolderError, must
 from gaitlab.gait.records import Trace
 from gaitlab.report.body_view import TRUNK, TRUNK_TOP, draw_body, draw_feet, faded, vacuum_colour
 from gaitlab.report.canvas import Canvas
@@ -142,16 +142,25 @@ def _draw_figures(canvas: Canvas, film: Film, index: int) -> None:
 
 
 def write_gif(film: Film, path: str | Path) -> Path:
-    """The film as an endless GIF at its own speed, one palette for all frames.
+    """The film as an endless GIF at its own speed, one palette for all frames."""
+    return save_gif(list(_all_painted(film)), film.frame_s, path)
 
-    GIF times are whole hundredths of a second, and viewers slow down below two of them.
+
+def save_gif(pictures: Sequence[Image.Image], frame_s: float, path: str | Path) -> Path:
+    """Pictures as an endless GIF in the film's palette.
+
+    GIF times are whole hundredths of a second, and viewers slow down below two of them. Raises InputError for a name that
+    does not end in .gif or a folder that is not there.
     """
-    target = _named(path, ".gif")
-    frames = [painted(film, index) for index in range(len(film.frames))]
-    palette = _palette()
-    indexed = [frame.quantize(palette=palette, dither=Image.Dither.NONE) for frame in frames]
-    duration_ms = max(10 * round(100 * film.frame_s), 20)
-    indexed[0].save(target, save_all=True, append_images=indexed[1:], duration=duration_ms, loop=0, optimize=False)
+    target, palette = _named(path, ".gif"), _palette()
+    indexed = [picture.quantize(palette=palette, dither=Image.Dither.NONE) for picture in pictures]
+    duration_ms = max(10 * round(100 * frame_s), 20)
+    try:
+        indexed[0].save(target, save_all=True, append_images=indexed[1:], duration=duration_ms, loop=0, optimize=False)
+    except OSError as error:
+        raise RunFolderError(
+            must("film file", "writable", str(target), (error.strerror or str(error)).lower())
+        ) from error
     return target
 
 

@@ -54,13 +54,15 @@ def ring_waves(picture: WavePicture, *, title: str) -> Figure:
         for axes in (upper, lower):
             axes.set_ylabel("output")
         figure.suptitle(title, x=0.01, ha="left", fontsize=11, fontweight="bold")
-        _key(lower, picture)
+        _scale(upper, picture)
+        _scale(lower, picture)
+        figure.supxlabel(_key(picture), x=0.01, ha="left", fontsize=7.5)
     return figure
 
 
 def _stack(axes: Axes, picture: WavePicture, order: Sequence[int]) -> None:
     """One strip for each output, the first of `order` on top; a strip is one full supply vacuum high."""
-    full = 1.12 * max(float(picture.supply_Pa.max()), float(picture.vacuum_Pa.max()))
+    full = _full(picture)
     time = np.arange(PERIODS * picture.supply_Pa.size + 1) / picture.supply_Pa.size * picture.period_s
     marks = []
     for place, output in enumerate(order):
@@ -89,17 +91,29 @@ def _mark_edges(axes: Axes, marks: Sequence[tuple[float, float]], period_s: floa
     axes.plot([phase * period_s for phase, _ in marks], [y for _, y in marks], color=ORANGE, lw=0.9, ls="--")
 
 
-def _key(axes: Axes, picture: WavePicture) -> None:
-    """Says under the picture what its marks are, with the vacuums they stand for."""
+def _scale(axes: Axes, picture: WavePicture) -> None:
+    """A scale in kPa on the right of the top strip; every strip has the same."""
+    full, top = _full(picture), len(picture.phase) - 1
+    peak = float(picture.vacuum_Pa.max())
+    right = axes.secondary_yaxis("right")
+    right.set_yticks([top, top + peak / full], ["0 kPa", f"{peak / KPA:.0f} kPa"])
+    right.tick_params(length=3, labelsize=7.5)
+    right.spines["right"].set_visible(False)
+
+
+def _full(picture: WavePicture) -> float:
+    """Vacuum [Pa] that fills the height of a strip."""
+    return 1.12 * max(float(picture.supply_Pa.max()), float(picture.vacuum_Pa.max()))
+
+
+def _key(picture: WavePicture) -> str:
+    """What the picture's marks are, with the vacuums they stand for."""
     hold, release = picture.hold_Pa.mean() / KPA, picture.release_Pa.mean() / KPA
-    supply, peak = picture.supply_Pa.mean() / KPA, picture.vacuum_Pa.max() / KPA
-    text = (
-        f"line: vacuum at the output, peak {peak:.1f} kPa    dotted: supply, mean {supply:.1f} kPa    "
-        f"grey band: next valve lets go at {release:.1f}, takes hold at {hold:.1f} kPa\n"
-        "dots: evacuation edges    dashed: from each strip's edge to the next strip's, first period"
-    )
-    axes.annotate(
-        text, (0.0, 0.0), xycoords="axes fraction", xytext=(0, -32), textcoords="offset points", va="top", fontsize=7.5
+    return (
+        f"blue: gauge vacuum at the output, peak {picture.vacuum_Pa.max() / KPA:.1f} kPa.  "
+        f"dotted: supply, mean {picture.supply_Pa.mean() / KPA:.1f} kPa.  dots: evacuation edges.\n"
+        f"grey band: below it ({release:.1f} kPa) the next valve lets go, above it ({hold:.1f} kPa) it takes hold.\n"
+        "dashed: from each strip's edge to the next strip's, first period."
     )
 
 

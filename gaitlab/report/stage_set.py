@@ -69,8 +69,8 @@ def stage_set(stretch: Stretch, *, title: str, subtitle: str, full_Pa: float) ->
     side = Camera(2, scale, float(stretch.low_m[0]), 0.0, left, floor)
     above = Camera(1, scale, float(stretch.low_m[0]), float(stretch.high_m[1]), left, below)
     canvas = Canvas.blank(WIDTH, HEIGHT, PAPER)
-    for words, y, size, bold in ((title, 20.0, 15.0, True), (subtitle, 39.0, 10.5, False)):
-        shown, fitting = fitted(words, 0.86 * (VIEW_RIGHT - VIEW_LEFT), size=size, least=8.5)
+    for words, y, points, bold in ((title, 20.0, 15.0, True), (subtitle, 39.0, 10.5, False)):
+        shown, fitting = fitted(words, 0.86 * (VIEW_RIGHT - VIEW_LEFT), size=points, least=8.5)
         canvas.text((VIEW_LEFT, y), shown, size=fitting, bold=bold, colour=INK if bold else MUTED)
     _draw_floor(canvas, side, stretch)
     _draw_tray(canvas, above, stretch)
