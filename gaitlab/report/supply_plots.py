@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from matplotlib.axes import Axes
@@ -45,9 +46,9 @@ def pump_picture(picture: PumpPicture, *, title: str) -> Figure:
         axes.annotate(
             f"{flow * L_MIN:.2f} L/min at {vacuum / KPA:.1f} kPa",
             (vacuum / KPA, flow * L_MIN),
-            xytext=(-10, 12),
+            xytext=(0, -16),
             textcoords="offset points",
-            ha="right",
+            ha="center",
         )
         axes.set_xlabel("gauge vacuum at the manifold, mean of a period (kPa)")
         axes.set_ylabel("free-air flow (L/min ANR)")
@@ -59,7 +60,7 @@ def pump_picture(picture: PumpPicture, *, title: str) -> Figure:
     return figure
 
 
-def _draw(axes: Axes, curve: Curve, label: str, **look: object) -> None:
+def _draw(axes: Axes, curve: Curve, label: str, **look: Any) -> None:
     axes.plot(curve[0] / KPA, curve[1] * L_MIN, label=label, **look)
 
 
@@ -72,7 +73,7 @@ def stroke_picture(cuts_s: Sequence[float], supply_Pa: Sequence[float], *, title
         upper.annotate(
             f"last beat {cuts_s[-1]:.1f} s, {supply_Pa[-1] / KPA:.1f} kPa",
             (cuts_s[-1], supply_Pa[-1] / KPA),
-            xytext=(-6, 10),
+            xytext=(-6, -14),
             textcoords="offset points",
             ha="right",
         )

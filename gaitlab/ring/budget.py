@@ -8,8 +8,8 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from gaitlab.air.gas import DENSITY_ANR_KG_M3, gas_of
-from gaitlab.air.supply import FixedLaw, SyringeLaw, supply_law
 from gaitlab.errors import InputError, must
+from gaitlab.ring.manifold import manifold_of
 from gaitlab.ring.pattern import LoadPattern
 from gaitlab.ring.periodic import Settings
 from gaitlab.ring.solve import pattern_run
@@ -98,17 +98,21 @@ def scaled(supply: Supply, factor: float) -> Pump | PumpTable:
     return Pump(supply.vacuum_Pa, ASSUMED_FREE_M3_S * factor, "mass", ASSUMED_BUFFER_M3)
 
 
-def demand(pattern: LoadPattern, vacuums_Pa: Sequence[float]) -> FloatArray:
+def demand(pattern: LoadPattern, vacuums_Pa: Sequence[float] | FloatArray) -> FloatArray:
     """Mean draw [kg/s] of the ring on house lines of these vacuums [Pa gauge]; nan where it does not run."""
     runs = [pattern_run(replace(pattern, supply=FixedVacuum(float(v)))) for v in vacuums_Pa]
     return np.array([r.air_kg_per_period / r.period_s if r.outcome == OSCILLATES else np.nan for r in runs])
 
 
-def pump_curve(pattern: LoadPattern, points: int = 60) -> tuple[FloatArray, FloatArray]:
-    """The pump's curve: gauge vacuum [Pa] up to its dead end, mass flow [kg/s]. Raises InputError for a supply without one."""
+def dead_end(pattern: LoadPattern) -> float:
+    """Gauge vacuum [Pa] that the supply reaches with nothing to draw."""
     gas = gas_of(pattern.ambient)
-    law = supply_law(pattern.supply, gas)
-    if isinstance(law, FixedLaw | SyringeLaw):
-        raise InputError(must("supply", "a pump or a pump table", type(pattern.supply).__name__))
-    vacuum = np.linspace(0.0, gas.pressure_Pa - law.rest_Pa, points)
-    return vacuum, np.array([law.mass_flow(gas.pressure_Pa - float(v))[0] for v in vacuum])
+    return gas.pressure_Pa - manifold_of(pattern.supply, gas).dead_end_Pa
+
+
+def pump_curve(pattern: LoadPattern, factor: float = 1.0, *, points: int = 60) -> tuple[FloatArray, FloatArray]:
+    """The curve of a pump like the file's, its free flow multiplied: gauge vacuum [Pa] up to its dead end, mass flow [kg/s]."""
+    gas = gas_of(pattern.ambient)
+    law = manifold_of(scaled(pattern.supply, factor), gas)
+    vacuum = np.linspace(0.0, dead_end(pattern), points)
+    return vacuum, np.array([law.source.mass_flow(gas.pressure_Pa - float(v))[0] for v in vacuum])

@@ -11,7 +11,8 @@ from collections.abc import Sequence
 import numpy as np
 
 from gaitlab.errors import InputError, must
-from gaitlab.ring.waves import FloatArray, Waves
+from gaitlab.ring import measures
+from gaitlab.ring.waves import FloatArray, RingRun, Waves
 from gaitlab.robot.records import Robot
 from gaitlab.wiring.wiring import HELD, OPEN, Wiring
 
@@ -101,3 +102,33 @@ def ideal_waves(
         ]
     ).reshape(len(inlets), samples)
     return Waves(period_s=period_s, inlets=inlets, vacuum_Pa=vacuum)
+
+
+def ideal_run(
+    robot: Robot, wiring: Wiring, sequence: str | Sequence[float], period_s: float, vacuum_Pa: float
+) -> RingRun:
+    """An ideal sequence in the form of a ring's run, its outcome `ideal`: nothing of it was solved."""
+    stages = robot.ring.stages
+    waves = ideal_waves(robot, wiring, sequence, period_s, vacuum_Pa)
+    phase = ideal_phases(sequence, stages)
+    output = raised_cosine(np.arange(SAMPLES) / SAMPLES - phase[:, None], vacuum_Pa)
+    edge = np.full(stages, period_s * 2.0 * np.arcsin(0.8) / (2.0 * np.pi))  # 10 to 90 % of (1 + sin)/2
+    return RingRun(
+        outcome="ideal",
+        remedy="",
+        period_s=period_s,
+        phase=np.mod(phase - phase[0], 1.0),
+        duty=np.full(stages, 0.5),
+        peak_vacuum_Pa=np.full(stages, vacuum_Pa),
+        least_vacuum_Pa=np.zeros(stages),
+        rise_s=edge,
+        fall_s=edge,
+        start_up_s=0.0,
+        supply_mean_Pa=vacuum_Pa,
+        supply_min_Pa=vacuum_Pa,
+        air_kg_per_period=float("nan"),
+        harmonic=measures.harmonic(np.mod(phase - phase[0], 1.0)),
+        output_vacuum_Pa=output,
+        supply_vacuum_Pa=np.full(SAMPLES, vacuum_Pa),
+        waves=waves,
+    )

@@ -9,11 +9,12 @@ import numpy as np
 from scipy.interpolate import CubicSpline
 
 from gaitlab.ring.circuit import Circuit, circuit_of_pattern
+from gaitlab.ring.levels import margins
 from gaitlab.ring.pattern import LoadPattern, Placement, placed_pattern
 from gaitlab.ring.periodic import Settings, Settled, nudged, settled
 from gaitlab.ring.reading import oscillating_run, resting_run
 from gaitlab.ring.stroke import StrokeRun, stroke_run
-from gaitlab.ring.verdict import REMEDIES, SHORT_STROKE, margins, rest_outcome, run_outcome, travelling_edges
+from gaitlab.ring.verdict import REMEDIES, SHORT_STROKE, rest_outcome, run_outcome, travelling_edges
 from gaitlab.ring.waves import FloatArray, RingRun, Waves
 from gaitlab.robot.circuit import Syringe
 from gaitlab.robot.records import Robot
@@ -64,7 +65,7 @@ def run_from(circuit: Circuit, start: FloatArray, *, settings: Settings = Settin
         return replace(run, harmonic=travelling_edges(circuit, followed.end)) if unsteady else run
     run = oscillating_run(circuit, followed, followed.cycle)
     outcome, remedy = run_outcome(circuit, run)
-    return replace(run, outcome=outcome, remedy=remedy, details=margins(circuit, run))
+    return replace(run, outcome=outcome, remedy=remedy, details=margins(circuit.valves, run))
 
 
 def stroke_record(circuit: Circuit, stroke: StrokeRun) -> RingRun:
@@ -80,7 +81,9 @@ def stroke_record(circuit: Circuit, stroke: StrokeRun) -> RingRun:
         ("dies_at_s", stroke.cuts_s[-1]),
         ("dies_at_supply_Pa", stroke.supply_Pa[-1]),
     )
-    return replace(run, outcome=outcome, remedy=remedy, start_up_s=stroke.cuts_s[0], details=details + margins(circuit, run))
+    return replace(
+        run, outcome=outcome, remedy=remedy, start_up_s=stroke.cuts_s[0], details=details + margins(circuit.valves, run)
+    )
 
 
 def placed(run: RingRun, placement: Placement, robot: Robot, wiring: Wiring) -> RingRun:

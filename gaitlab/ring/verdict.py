@@ -40,11 +40,12 @@ def run_outcome(circuit: Circuit, run: RingRun) -> tuple[str, str]:
     Anything else is a higher harmonic, or a ring whose supply has sagged so far that its stages follow the manifold
     instead of one another.
     """
-    if run.harmonic == 1:
-        name = OSCILLATES
-    else:
-        name = HIGHER_HARMONIC if lifts(circuit, run.supply_mean_Pa) else STARVES
+    name = OSCILLATES if run.harmonic == 1 else _disordered_name(circuit, run.supply_mean_Pa)
     return name, REMEDIES[name]
+
+
+def _disordered_name(circuit: Circuit, supply_Pa: float) -> str:
+    return HIGHER_HARMONIC if lifts(circuit, supply_Pa) else STARVES
 
 
 def rest_outcome(circuit: Circuit, run: Settled, settings: Settings) -> tuple[str, str]:
@@ -106,23 +107,6 @@ def dead_end(circuit: Circuit) -> float:
 def curve_of(circuit: Circuit, stage: int, supply_Pa: float) -> InverterCurve:
     """The curve of one stage (0…N−1) at a supply vacuum."""
     return inverter_curve(circuit.pattern.stages[stage].resistor, circuit.valves[stage], supply_Pa, circuit.gas)
-
-
-def margins(circuit: Circuit, run: RingRun) -> tuple[tuple[str, float], ...]:
-    """How far the levels in motion are from failing, worst stage, gauge [Pa].
-
-    `high_margin_Pa`: peak of an output above the control that opens the next valve half way while that one's own output
-    is at its peak. `low_margin_Pa`: how far an output falls below the control that lets the next valve go half shut
-    while that one's own output is at its least.
-    """
-    peak, least = run.peak_vacuum_Pa, run.least_vacuum_Pa
-    half = np.array([valve.threshold_Pa + 0.5 * valve.opening_span_Pa for valve in circuit.valves])
-    sealing = np.array([valve.sealing for valve in circuit.valves])
-    hysteresis = np.array([valve.hysteresis_Pa for valve in circuit.valves])
-    # The valve that an output drives is the next stage's, so an output stands against the valve's values rolled back by one.
-    high = peak - np.roll(half + sealing * peak, -1)
-    low = np.roll(half - hysteresis + sealing * least, -1) - least
-    return ("high_margin_Pa", float(high.min())), ("low_margin_Pa", float(low.min()))
 
 
 def weakest_gain(circuit: Circuit, supply_Pa: float) -> float:
