@@ -1,0 +1,82 @@
+"""One real evaluation: repeatable to the bit, blind to turns of the ring, its failures named."""
+
+from __future__ import annotations
+
+import dataclasses
+import json
+
+import pytest
+from search.fakes import task_of
+from wiring.robots import row_document
+
+from gaitlab.search.evaluate import BROKE_DOWN, REFUSED, WORKER_LOST, Evaluation, Guarded, Job, evaluate
+from gaitlab.search.run import SearchTask, job_of
+from gaitlab.search.settings import WalkSettings
+from gaitlab.search.strategies.ask_tell import Ask
+from gaitlab.search.workers import local_workers
+from gaitlab.wiring.wiring import Wiring
+
+TASK = task_of()
+SMOOTH = Wiring.of({"a": 1, "b": 3, "c": 5, "d": 2, "e": 4})
+
+
+def job(wiring: Wiring = SMOOTH, periods: int | None = 2, task: SearchTask = TASK) -> Job:
+    return job_of(task, Ask(wiring, periods))
+
+
+@pytest.mark.slow
+def test_a_walk_repeats_to_the_bit_here_and_in_a_worker() -> None:
+    here = evaluate(job()).walk
+    workers = local_workers(evaluate, 1)
+    ((_, there),) = workers.evaluated([job()])
+    workers.close()
+    assert repr(there.walk) == repr(here) == repr(evaluate(job()).walk)
+
+
+@pytest.mark.slow
+def test_turning_the_ring_changes_no_travel() -> None:
+    """Every output number moved on by one only shifts time: settled travel within the walks' own scatter or 1 %."""
+    walks = [evaluate(job(SMOOTH.turned(steps, 5), None)).walk for steps in (0, 1, 3)]
+    assert all(walk.outcome == "walked" for walk in walks)
+    for walk in walks[1:]:
+        assert walk.travel_m == pytest.approx(walks[0].travel_m, rel=0.01, abs=3 * walk.travel_scatter_m)
+
+
+@pytest.mark.slow
+def test_the_beginning_of_a_settled_walk_is_the_short_walk() -> None:
+    short, settled = evaluate(job(periods=2)).walk, evaluate(job(periods=None)).walk
+    assert short.travels_m == settled.travels_m[:2]
+    assert short.travel_m == settled.travels_m[1]
+
+
+def test_a_ring_that_does_not_start_is_an_outcome_with_a_remedy() -> None:
+    document = row_document(5, 5)
+    document["ring"]["valve"]["threshold_kPa"] = 70
+    weak = dataclasses.replace(TASK, document=document)
+    walk = evaluate(dataclasses.replace(job(), document_json=json.dumps(weak.document))).walk
+    assert walk.outcome not in ("walked", BROKE_DOWN, REFUSED)
+    assert walk.remedy and walk.simulated_s == 0.0
+
+
+def test_what_a_model_refuses_is_named() -> None:
+    """Half a second a step leaves no room for a period's shape."""
+    walk = evaluate(dataclasses.replace(job(), settings=WalkSettings(step_s=0.5))).walk
+    assert walk.outcome == REFUSED and "at least 20 steps" in walk.remedy
+
+
+def raising(error: BaseException) -> Guarded:
+    def evaluated(job: Job) -> Evaluation:
+        raise error
+
+    return Guarded(evaluated)
+
+
+def test_a_guarded_evaluation_always_ends_as_a_walk() -> None:
+    broken = raising(ZeroDivisionError("a fault"))(job()).walk
+    assert broken.outcome == BROKE_DOWN and "ZeroDivisionError: a fault" in broken.remedy
+    assert raising(MemoryError())(job()).walk.outcome == WORKER_LOST
+
+
+def test_ctrl_c_goes_through_a_guard() -> None:
+    with pytest.raises(KeyboardInterrupt):
+        raising(KeyboardInterrupt())(job())
