@@ -45,6 +45,11 @@ def broken(words: str, width_mm: float, size_pt: float, *, bold: bool = False) -
     return lines or [""]
 
 
+def broken_label(words: str, *, width_mm: float, size_pt: float) -> str:
+    """A long label in several lines, for an axis."""
+    return "\n".join(broken(words, width_mm, size_pt))
+
+
 def _cut(word: str, width_mm: float, size_pt: float, bold: bool) -> list[str]:
     pieces = [""]
     for letter in word:
@@ -56,15 +61,16 @@ def _cut(word: str, width_mm: float, size_pt: float, bold: bool) -> list[str]:
 
 @dataclass(frozen=True)
 class Paper:
-    """One page; every place is (mm from left, mm from top)."""
+    """One page; every place is (mm from left, mm from top), every type size is multiplied by `type_scale`."""
 
     figure: Figure
     ground: Axes
     width_mm: float
     height_mm: float
+    type_scale: float
 
     @classmethod
-    def blank(cls, width_mm: float, height_mm: float) -> Paper:
+    def blank(cls, width_mm: float, height_mm: float, *, type_scale: float = 1.0) -> Paper:
         """An empty page of that size."""
         figure = Figure(figsize=(width_mm / MM_PER_INCH, height_mm / MM_PER_INCH))
         FigureCanvasAgg(figure)
@@ -72,7 +78,7 @@ class Paper:
         ground.set_xlim(0, width_mm)
         ground.set_ylim(height_mm, 0)
         ground.set_axis_off()
-        return cls(figure, ground, width_mm, height_mm)
+        return cls(figure, ground, width_mm, height_mm, type_scale)
 
     def line(
         self,
@@ -87,14 +93,16 @@ class Paper:
     ) -> None:
         """One line of text whose baseline is at `y`."""
         weight = "bold" if bold else "normal"
-        self.ground.text(x, y, words, fontsize=size, fontweight=weight, color=colour, ha=align, va="baseline")
+        self.ground.text(
+            x, y, words, fontsize=self.type_scale * size, fontweight=weight, color=colour, ha=align, va="baseline"
+        )
 
     def paragraph(
         self, x: float, y: float, words: str, *, width: float, size: float = 8.0, bold: bool = False, colour: str = INK
     ) -> float:
         """Text broken to `width`, first baseline one line below `y`; gives back the y below it."""
-        step = size * MM_PER_POINT * LINE_SPACING
-        for words_of_line in broken(words, width, size, bold=bold):
+        step = self.type_scale * size * MM_PER_POINT * LINE_SPACING
+        for words_of_line in broken(words, width, self.type_scale * size, bold=bold):
             y += step
             self.line(x, y, words_of_line, size=size, bold=bold, colour=colour)
         return y

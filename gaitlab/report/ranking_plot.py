@@ -8,13 +8,16 @@ import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Patch
+from matplotlib.ticker import MaxNLocator
 
+from gaitlab.report.paper import broken_label
 from gaitlab.report.run_folder import RankedWiring
 from gaitlab.report.style import BLUE, INK, MUTED, ORANGE, RULE, SKY, bare, new_figure, styled
 
 MM = 1e3
 ROWS_SHOWN = 15
 ROW_MM = 7.0
+LABEL_MM, LABEL_PT, LINE_MM = 62.0, 8.0, 3.6
 
 
 def ranking_bars(ranking: Sequence[RankedWiring], *, limit: int = ROWS_SHOWN, title: str = "Ranking") -> Figure:
@@ -25,19 +28,25 @@ def ranking_bars(ranking: Sequence[RankedWiring], *, limit: int = ROWS_SHOWN, ti
     """
     shown = list(ranking[:limit])
     with styled():
-        figure = new_figure(170, 78 + ROW_MM * len(shown))
-        bars, field = figure.subplots(2, 1, height_ratios=[24 + ROW_MM * len(shown), 34])
-        _draw_bars(bars, shown)
+        labels = [broken_label(row.wiring.text(), width_mm=LABEL_MM, size_pt=LABEL_PT) for row in shown]
+        height = sum(ROW_MM + LINE_MM * label.count("\n") for label in labels)
+        figure = new_figure(170, 78 + height)
+        bars, field = figure.subplots(2, 1, height_ratios=[24 + height, 34])
+        _draw_bars(bars, shown, labels)
         bars.set_title(f"{title}: best {len(shown)} of {len(ranking)}", pad=22)
         _draw_field(field, ranking)
     return figure
 
 
-def _draw_bars(ax: Axes, rows: Sequence[RankedWiring]) -> None:
+def _draw_bars(ax: Axes, rows: Sequence[RankedWiring], labels: Sequence[str]) -> None:
     for y, row in enumerate(rows):
         _draw_one(ax, y, row)
     ax.axvline(0.0, color=INK, lw=0.8)
-    ax.set_yticks(range(len(rows)), [f"{row.wiring.text()}   {row.rank:>2}" for row in rows], fontsize=8)
+    ax.set_yticks(
+        range(len(rows)),
+        [f"{label}   {row.rank:>2}" for label, row in zip(labels, rows, strict=True)],
+        fontsize=LABEL_PT,
+    )
     ax.set_ylim(len(rows) - 0.4, -0.6)
     ax.set_xlabel("travel (mm per period), whisker: scatter between periods")
     ax.set_ylabel("wiring (inlet=output), rank")
@@ -75,5 +84,6 @@ def _draw_field(ax: Axes, ranking: Sequence[RankedWiring]) -> None:
     ax.set_xlabel("rank (–), every wiring that walked")
     ax.set_ylabel("travel (mm\nper period)")
     ax.set_xlim(0.3, max(ranks) + 0.7)
+    ax.xaxis.set_major_locator(MaxNLocator(integer=True))
     ax.tick_params(axis="x", colors=MUTED)
     bare(ax, grid="y")

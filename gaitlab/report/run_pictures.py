@@ -57,7 +57,7 @@ def _figures(run: SavedRun) -> dict[str, Figure]:
     best = run.best
     figures = {
         "ranking": ranking_bars(run.ranking, title=run.robot.name),
-        "footfall": footfall_chart(best.walk, best.reversed_walk, title=f"Footfalls of {best.wiring.text()}"),
+        "footfall": footfall_chart(best.walk, best.reversed_walk, title=f"Footfalls of {run.robot.name}, best wiring"),
         "pressure_map": pressure_map(run.ring.waves, wiring=best.wiring),
     }
     pump = pump_working_point(run.robot, run.ring)

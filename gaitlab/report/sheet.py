@@ -22,7 +22,10 @@ LEFT, WIDTH = 13.0, 184.0
 GUTTER = 7.0
 HALF = 0.5 * (WIDTH - GUTTER)
 RIGHT = LEFT + HALF + GUTTER
-TABLE_MM = 72.0  # height the tube table may take; more rows are set tighter
+BOTTOM = 291.0
+TYPE_SCALES = (1.0, 0.95, 0.9, 0.85, 0.8, 0.75, 0.7)  # the first at which everything fits is taken
+TABLE_MM = 44.0  # height the tube table may take; more rows are set tighter
+ROWS_WIDE = 8  # more tubes than this go into two tables side by side
 COLUMNS = (24.0, 26.0, 18.0, 36.0, 36.0, 22.0, 22.0)
 HEADS = (
     "from",
@@ -33,20 +36,28 @@ HEADS = (
     "measured low",
     "measured high",
 )
+HALF_COLUMNS = (17.5, 17.0, 12.0, 24.0, 18.0)
+HALF_HEADS = ("from", "to inlet", "cut, mm", "after 1, s (phase)", "gauge, kPa")
 
 
 def bench_sheet(run: SavedRun) -> Figure:
-    """The sheet as a figure of A4 size."""
+    """The sheet as a figure of A4 size, in the largest type that leaves room for all of it."""
     content = sheet_content(run)
     with styled():
-        paper = Paper.blank(*A4_MM)
-        y = _draw_head(paper, content)
-        y = _draw_tubes(paper, content, y + 3.0)
-        y = _draw_middle(paper, run, content, y + 4.0)
-        y = _draw_orientation(paper, content, y + 3.0)
-        y = max(_draw_assembly(paper, content, y + 3.0), _draw_faults(paper, content, y + 3.0))
-        _draw_cautions(paper, y + 3.5)
+        for scale in TYPE_SCALES:
+            paper = Paper.blank(*A4_MM, type_scale=scale)
+            if _draw_all(paper, run, content) <= BOTTOM:
+                break
     return paper.figure
+
+
+def _draw_all(paper: Paper, run: SavedRun, content: SheetContent) -> float:
+    y = _draw_head(paper, content)
+    y = _draw_tubes(paper, content, y + 3.0)
+    y = _draw_middle(paper, run, content, y + 4.0)
+    y = _draw_orientation(paper, content, y + 3.0)
+    y = max(_draw_assembly(paper, content, y + 3.0), _draw_faults(paper, content, y + 3.0))
+    return _draw_cautions(paper, y + 3.5)
 
 
 def sheet_files(run: SavedRun, pdf: Path) -> dict[Path, bytes]:
@@ -74,9 +85,29 @@ def _draw_head(paper: Paper, content: SheetContent) -> float:
 def _draw_tubes(paper: Paper, content: SheetContent, y: float) -> float:
     bore = number(MM * content.bore_m)
     y = paper.heading(LEFT, y, f"1  Tubes, bore {bore} mm: which output goes to which inlet", width=WIDTH)
-    row_mm = min(6.0, TABLE_MM / max(len(content.tubes), 1))
     rows = [_cells(row) for row in content.tubes]
-    return paper.table(LEFT, y, COLUMNS, rows, heads=HEADS, row_mm=row_mm, size=min(9.0, 1.6 * row_mm))
+    if len(rows) <= ROWS_WIDE:
+        row_mm = paper.type_scale * min(6.0, TABLE_MM / max(len(rows), 1))
+        below = paper.table(
+            LEFT, y, COLUMNS, rows, heads=HEADS, row_mm=row_mm, size=min(9.0, 1.6 * row_mm / paper.type_scale)
+        )
+    else:
+        below = _draw_two_tables(paper, [row[: len(HALF_HEADS)] for row in rows], y)
+    if content.open_inlets:
+        words = f"Open to atmosphere, no tube: {', '.join(content.open_inlets)}."
+        below = paper.paragraph(LEFT, below, words, width=WIDTH, size=7.6)
+    return below
+
+
+def _draw_two_tables(paper: Paper, rows: list[tuple[str, ...]], y: float) -> float:
+    half = (len(rows) + 1) // 2
+    row_mm = paper.type_scale * min(5.0, TABLE_MM / half)
+    size = min(7.4, 1.75 * row_mm / paper.type_scale)
+    ends = [
+        paper.table(x, y, HALF_COLUMNS, part, heads=HALF_HEADS, row_mm=row_mm, size=size)
+        for x, part in ((LEFT, rows[:half]), (RIGHT, rows[half:]))
+    ]
+    return max(ends)
 
 
 def _cells(row: TubeRow) -> tuple[str, ...]:
@@ -144,7 +175,7 @@ def _draw_faults(paper: Paper, content: SheetContent, y: float) -> float:
     return y
 
 
-def _draw_cautions(paper: Paper, y: float) -> None:
+def _draw_cautions(paper: Paper, y: float) -> float:
     top, half = y, (WIDTH - 9.0) / 2
     y = paper.paragraph(LEFT + 3.0, y + 0.8, "Cautions", width=30.0, size=8.6, bold=True) + 0.4
     ends = []
@@ -155,3 +186,4 @@ def _draw_cautions(paper: Paper, y: float) -> None:
         ends.append(below)
     below = paper.paragraph(LEFT + 3.0, max(ends) + 0.3, ESTIMATES, width=WIDTH - 6.0, size=6.9, bold=True)
     paper.box(LEFT, top, WIDTH, below - top + 2.2, fill="#f6f7f8", edge=BLUE, radius=1.5)
+    return below + 2.2

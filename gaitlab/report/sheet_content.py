@@ -7,12 +7,14 @@ from dataclasses import dataclass
 
 from gaitlab.report.pump_plot import L_MIN_ANR
 from gaitlab.report.run_folder import SavedRun
-from gaitlab.report.words import KPA, MM, number, reversed_text, source_text, speed_estimate, speed_text
+from gaitlab.report.words import KPA, MM, number, rechecks_text, reversed_text, source_text, speed_estimate, speed_text
 from gaitlab.ring.tubing import tube_lengths
 from gaitlab.ring.waves import RingRun
 from gaitlab.robot.circuit import FixedVacuum, Pump, PumpTable
 from gaitlab.robot.records import Robot
+from gaitlab.wiring.wiring import OPEN
 
+WIRING_LETTERS = 70  # a longer wiring is left to the table
 CUT_STEP_M = 0.001  # tubes are cut to the millimetre
 
 
@@ -36,6 +38,7 @@ class SheetContent:
     title: str
     subtitle: str
     tubes: tuple[TubeRow, ...]
+    open_inlets: tuple[str, ...]
     bore_m: float
     expected: tuple[tuple[str, str], ...]
     orientation: tuple[str, ...]
@@ -48,14 +51,21 @@ def sheet_content(run: SavedRun) -> SheetContent:
     robot, best = run.robot, run.best
     return SheetContent(
         title=robot.name,
-        subtitle=f"wiring {best.wiring.text()} · {run.robot_path} · {run.created} · gaitlab {run.version}",
-        tubes=tube_rows(run),
+        subtitle=_subtitle(run),
+        tubes=tuple(row for row in tube_rows(run) if row.source != OPEN),
+        open_inlets=best.wiring.inlets_on(OPEN),
         bore_m=robot.tubes.bore_m,
         expected=_expected(run),
         orientation=_orientation(run),
         assembly=_assembly(run),
         faults=_faults(run),
     )
+
+
+def _subtitle(run: SavedRun) -> str:
+    wiring = run.best.wiring.text()
+    about = f"{run.robot_path} · {run.created} · gaitlab {run.version}"
+    return f"wiring {wiring} · {about}" if len(wiring) <= WIRING_LETTERS else about
 
 
 def tube_rows(run: SavedRun) -> tuple[TubeRow, ...]:
@@ -68,7 +78,7 @@ def tube_rows(run: SavedRun) -> tuple[TubeRow, ...]:
 def _tube_row(ring: RingRun, inlet: str, source: int | str, length_m: float) -> TubeRow:
     cut = CUT_STEP_M * math.ceil(length_m / CUT_STEP_M - 1e-6)
     if isinstance(source, str):
-        level = 0.0 if source == "open" else ring.supply_mean_Pa
+        level = 0.0 if source == OPEN else ring.supply_mean_Pa
         return TubeRow(source, inlet, cut, math.nan, math.nan, level, level)
     k = source - 1
     phase = float(ring.phase[k])
@@ -93,6 +103,8 @@ def _expected(run: SavedRun) -> tuple[tuple[str, str], ...]:
     if estimate is not None:
         facts.append(("Interval", estimate.basis))
         facts += [("Doubt", warning) for warning in estimate.warnings]
+    if run.rechecks:
+        facts.append(("Rechecks", rechecks_text(run)))
     return tuple(facts)
 
 

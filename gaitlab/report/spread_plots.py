@@ -7,18 +7,21 @@ from collections.abc import Sequence
 import numpy as np
 from matplotlib.figure import Figure
 
+from gaitlab.report.paper import broken_label
 from gaitlab.report.run_folder import Spread
 from gaitlab.report.style import BLUE, INK, MUTED, bare, new_figure, styled
 from gaitlab.trust.sensitivity import Sensitivity
 
 MM = 1e3
 SENSITIVITIES_SHOWN = 12
+LABEL_MM, LABEL_PT, LINE_MM = 52.0, 8.0, 3.6
 
 
 def spread_plot(spread: Spread, *, title: str = "Spread over the tolerances") -> Figure:
     """p05 to p95 of travel [mm per period] with the median, one line per wiring, with its chances beside it."""
     with styled():
-        figure = new_figure(170, 45 + 10 * len(spread.wirings))
+        labels = [broken_label(row.wiring.text(), width_mm=LABEL_MM, size_pt=LABEL_PT) for row in spread.wirings]
+        figure = new_figure(170, 45 + sum(10 + LINE_MM * label.count("\n") for label in labels))
         ax = figure.subplots()
         for y, row in enumerate(spread.wirings):
             travel = row.summary.travel_m
@@ -27,7 +30,7 @@ def spread_plot(spread: Spread, *, title: str = "Spread over the tolerances") ->
             chances = f"best {100 * row.summary.best.share:.0f} %\nforward {100 * row.summary.forward.share:.0f} %"
             ax.text(1.01, y, chances, transform=ax.get_yaxis_transform(), va="center", fontsize=8, color=INK)
         ax.axvline(0.0, color=MUTED, lw=0.8)
-        ax.set_yticks(range(len(spread.wirings)), [row.wiring.text() for row in spread.wirings])
+        ax.set_yticks(range(len(spread.wirings)), labels, fontsize=LABEL_PT)
         ax.set_ylim(len(spread.wirings) - 0.4, -0.6)
         ax.set_xlabel(f"travel (mm per period): p05, p50, p95 of {spread.draws} draws")
         ax.set_ylabel("wiring (inlet=output)")

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.patches import Rectangle
@@ -9,42 +11,51 @@ from matplotlib.patches import Rectangle
 from gaitlab.report.style import BLUE, INK, MUTED, ORANGE, PAPER
 from gaitlab.ring.tubing import block_places, inlet_places
 from gaitlab.robot.records import Robot
-from gaitlab.wiring.wiring import Wiring
+from gaitlab.wiring.wiring import OPEN, Wiring
 
 MM = 1e3
 PORT_RADIUS = 0.085  # of the plan's longest side
 CORNERS = 40
+CROWDED = 8  # more inlets than this are named in small upright letters
 
 
 def draw_tube_plan(ax: Axes, robot: Robot, wiring: Wiring) -> None:
-    """Blocks as boxes, inlets as named dots, the ring as a circle of numbered ports, tubes as curves [mm]."""
-    inlets = {name: MM * place[:2] for name, place in inlet_places(robot).items()}
+    """Blocks as boxes, tubed inlets as named dots, the ring as a circle of numbered outputs, tubes as curves [mm]."""
+    inlets = {name: MM * place[:2] for name, place in inlet_places(robot).items() if wiring.source(name) != OPEN}
     _draw_blocks(ax, robot)
-    middle = MM * np.array(robot.tubes.manifold_m[:2])
     reach = _reach(robot, inlets)
-    ring = middle + np.array((0.0, 0.42 * reach))
+    middle = np.mean(list(inlets.values()), axis=0) if inlets else np.zeros(2)
+    ring = np.array((middle[0], max(place[1] for place in [*inlets.values(), middle]) + 0.42 * reach))
     ports = _ports(ring, PORT_RADIUS * reach, robot.ring.stages)
-    for inlet, source in wiring.pairs:
+    for inlet, place in inlets.items():
+        source = wiring.source(inlet)
         start = ports[source - 1] if isinstance(source, int) else ring + np.array((0.0, 1.8 * PORT_RADIUS * reach))
-        _draw_tube(ax, start, inlets[inlet], ring)
+        _draw_tube(ax, start, place, ring)
     _draw_ring(ax, ring, PORT_RADIUS * reach, ports)
-    for inlet, place in _spread_names(inlets, reach):
-        ax.plot(*inlets[inlet], marker="o", ms=5, mfc=BLUE, mec=INK, mew=0.6)
-        ax.text(
-            float(place[0]),
-            float(place[1]),
-            inlet,
-            ha="center",
-            va="center",
-            fontsize=7.5,
-            fontweight="bold",
-            color=INK,
-        )
+    _draw_inlets(ax, inlets, reach)
     ax.set_aspect("equal")
     ax.margins(0.06)
+    low, high = ax.get_ylim()
+    ax.set_ylim(low - (0.2 if len(inlets) > CROWDED else 0.08) * reach, high)  # room for the names
     ax.set_xlabel("forward x (mm)", fontsize=7)
     ax.set_ylabel("left y (mm)", fontsize=7)
     ax.tick_params(labelsize=6.5, length=2)
+
+
+def _draw_inlets(ax: Axes, inlets: dict[str, np.ndarray], reach: float) -> None:
+    """Dots with names below; names that share a place share a line, and many stand upright."""
+    crowded = len(inlets) > CROWDED
+    places: dict[tuple[float, float], list[str]] = {}
+    for inlet, place in inlets.items():
+        places.setdefault((round(float(place[0]), 1), round(float(place[1]), 1)), []).append(inlet)
+    for (x, y), names in places.items():
+        ax.plot(x, y, marker="o", ms=3.5 if crowded else 5.0, mfc=BLUE, mec=INK, mew=0.6)
+        look: dict[str, Any] = {"fontsize": 5.5, "rotation": 90} if crowded else {"fontsize": 7.5}
+        ax.text(x, y - 0.03 * reach, _listed(names), ha="center", va="top", fontweight="bold", color=INK, **look)
+
+
+def _listed(names: list[str]) -> str:
+    return ", ".join(names if len(names) <= 3 else [*names[:2], f"+{len(names) - 2}"])
 
 
 def _draw_blocks(ax: Axes, robot: Robot) -> None:
@@ -100,14 +111,3 @@ def _draw_ring(ax: Axes, centre: np.ndarray, radius: float, ports: list[np.ndarr
         turn_back = 2 * np.pi * (k + 0.5) / len(ports)
         at = centre + radius * np.array([np.sin(turn_back), np.cos(turn_back)])
         ax.plot(*at, marker=(3, 0, -90.0 - np.degrees(turn_back)), ms=0.75 * small, color=INK)
-
-
-def _spread_names(inlets: dict[str, np.ndarray], reach: float) -> list[tuple[str, np.ndarray]]:
-    """Names below their dots; several inlets at one place stand under each other."""
-    taken: dict[tuple[float, float], int] = {}
-    places = []
-    for inlet, place in inlets.items():
-        key = (round(float(place[0]), 1), round(float(place[1]), 1))
-        taken[key] = taken.get(key, 0) + 1
-        places.append((inlet, place - (0.0, 0.055 * reach * taken[key])))
-    return places

@@ -7,6 +7,7 @@ import json
 import math
 import re
 import subprocess
+from collections.abc import Callable
 from pathlib import Path
 
 import pytest
@@ -19,6 +20,7 @@ from gaitlab.report.run_folder import SavedRun, read_run
 from gaitlab.report.sheet import A4_MM, bench_sheet, sheet_files
 from gaitlab.report.sheet_content import sheet_content, tube_rows
 from gaitlab.report.words import number, reversed_text, speed_estimate
+from gaitlab.robot.parts import Unit
 from gaitlab.wiring.wiring import Wiring
 from tests.report import synthetic
 
@@ -99,8 +101,32 @@ def test_inlets_on_atmosphere_and_supply_come_last(run: SavedRun) -> None:
     assert rows[3].peak_Pa == run.ring.supply_mean_Pa and rows[4].peak_Pa == 0.0
 
 
-def test_everything_stays_on_the_paper(run: SavedRun) -> None:
-    figure = bench_sheet(run)
+def _crowded(run: SavedRun) -> SavedRun:
+    """The same run with thirty legs on five outputs and one leg open, in a robot of the same name."""
+    legs = tuple(
+        dataclasses.replace(run.robot.body.legs[k % 5], name=f"leg{k}", units=_units(run, k)) for k in range(31)
+    )
+    robot = dataclasses.replace(run.robot, body=dataclasses.replace(run.robot.body, legs=legs))
+    wiring = Wiring.of({f"leg{k}": "open" if k == 30 else k % 5 + 1 for k in range(31)})
+    best = dataclasses.replace(run.best, wiring=wiring, reversed_wiring=wiring.reversed(5))
+    return dataclasses.replace(run, robot=robot, ranking=(best,))
+
+
+def _units(run: SavedRun, k: int) -> tuple[Unit, ...]:
+    return (dataclasses.replace(run.robot.body.legs[0].units[0], inlet=f"leg{k}"),)
+
+
+def test_thirty_tubes_fit_as_well(run: SavedRun, tmp_path: Path) -> None:
+    crowded = _crowded(run)
+    text = _pdf_text(_written(crowded, tmp_path))
+    for k in range(30):
+        assert re.search(rf"output {k % 5 + 1}\s+leg{k}\s+\d+\s", text), k
+    assert "Open to atmosphere, no tube: leg30." in text
+
+
+@pytest.mark.parametrize("change", [lambda run: run, _crowded], ids=["five", "thirty-one"])
+def test_everything_stays_on_the_paper(run: SavedRun, change: Callable[[SavedRun], SavedRun]) -> None:
+    figure = bench_sheet(change(run))
     figure.draw_without_rendering()
     renderer = figure.canvas.get_renderer()
     for text in figure.axes[0].texts:
