@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 import os
 import signal
 import sys
@@ -23,26 +22,26 @@ from gaitlab.cli.options import (
     seed_option,
     workers_option,
 )
-from gaitlab.cli.output import Progress, print_facts, print_json, print_table, progress, warn
-from gaitlab.cli.spread_facts import checked_facts, print_checked
+from gaitlab.cli.output import Progress, print_json, progress, warn
+from gaitlab.cli.search_print import print_search
+from gaitlab.cli.spread_facts import checked_facts
 from gaitlab.errors import GaitlabError, InputError, must
 from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import RobotFile, read_robot
 from gaitlab.search.cluster import Certificates, cluster_workers
 from gaitlab.search.evaluate import Evaluate
-from gaitlab.search.objective import MEANING, OBJECTIVES, SCALE, UNITS
-from gaitlab.search.ranking import Ranked
-from gaitlab.search.ranking_table import SMOOTH_WORDS
+from gaitlab.search.objective import OBJECTIVES, SCALE, UNITS
 from gaitlab.search.run import SearchTask, Step
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.strategies.choice import STRATEGIES, StrategyChoice, strategy_of
-from gaitlab.search.summary import DONE, INTERRUPTED, TIE_RULE, SearchSummary
+from gaitlab.search.strategies.process_search import default_budget
+from gaitlab.search.summary import DONE, INTERRUPTED, SearchSummary
 from gaitlab.search.whole import SearchPlan, search_robot
 from gaitlab.search.workers import Workers, local_workers
 from gaitlab.trust.finalists import FinalistPlan, walks_needed
 from gaitlab.wiring.smooth import SmoothWaves
 
-SHOWN = 10  # places in the table; ranking.csv has all
+MANY = 2000  # distinct wirings above which walking all of them deserves a word; chosen by us
 EXIT_FAILED = 1
 EXIT_INTERRUPTED = 130
 
@@ -108,6 +107,7 @@ def command(robot_path: Path, as_json: bool, pictures: bool, **given: Any) -> No
         " ".join(["gaitlab", *sys.argv[1:]]),
         _finalists(given),
     )
+    _warn_of_many(choice, task)
     again = walks_needed(plan.finalists, file.robot, task.settings, task.space.distinct)
     waves = SmoothWaves.of(file.robot, task.space)
     expected = strategy_of(choice, task.space, waves).expected()
@@ -122,6 +122,12 @@ def command(robot_path: Path, as_json: bool, pictures: bool, **given: Any) -> No
         )
     drawn = _drawn(plan.folder) if pictures and summary.best else ()
     _tell(summary, task, drawn, as_json)
+
+
+def _warn_of_many(choice: StrategyChoice, task: SearchTask) -> None:
+    if choice.name == "exhaustive" and choice.budget is None and task.space.distinct > MANY:
+        few = default_budget(task.space)
+        warn(f"{task.space.distinct} wirings will be walked; --strategy gp looks for the best with about {few} walks")
 
 
 @contextmanager
@@ -209,94 +215,6 @@ def _tell(summary: SearchSummary, task: SearchTask, drawn: tuple[str, ...], as_j
         checked = {} if summary.checked is None else checked_facts(summary.checked, task.objective)
         print_json({**summary.facts, **checked, "files": list(drawn)})
     else:
-        _print_human(summary, task)
+        print_search(summary, task)
     if summary.outcome != DONE:
         raise click.exceptions.Exit(EXIT_INTERRUPTED if summary.outcome == INTERRUPTED else EXIT_FAILED)
-
-
-def _print_human(summary: SearchSummary, task: SearchTask) -> None:
-    facts = summary.facts
-    if summary.outcome != DONE:
-        click.echo(f"outcome: {summary.outcome}\nremedy: {summary.remedy}")
-    _print_places(summary, task)
-    failed = ", ".join(f"{count} {outcome}" for outcome, count in sorted(facts["failed"].items())) or "none"
-    print_facts(
-        [
-            ("wirings", f"{facts['raw']} in all, {facts['distinct']} distinct, {facts['evaluated']} walked"),
-            ("failed", failed),
-            *_smooth_lines(summary),
-            ("score", f"{MEANING[task.objective]} [{UNITS[task.objective]}]; {TIE_RULE}"),
-            *_screening_lines(summary),
-            ("simulated", f"{facts['simulated_s']:.0f} s in {facts['wall_s']:.0f} s"),
-            ("folder", facts["folder"]),
-        ]
-    )
-    if summary.checked is not None:
-        print_checked(summary.checked, task.objective)
-    click.echo(
-        "A distance from a physics engine is an estimate, good to 20–30 %: trust the order more than the length."
-    )
-
-
-def _print_places(summary: SearchSummary, task: SearchTask) -> None:
-    headers = [
-        "rank",
-        "wiring",
-        UNITS[task.objective],
-        "±",
-        "mm/s",
-        "drift mm",
-        "turn °",
-        "tied",
-        "wave",
-        "smooth",
-        "reversed",
-    ]
-    shown = list(summary.places[:SHOWN])
-    shown += [place for place in summary.smooth if place.rank > SHOWN]
-    print_table(headers, (_cells(place, task.objective) for place in shown))
-
-
-def _cells(place: Ranked, objective: str) -> list[object]:
-    scale, facts = SCALE[objective], place_table_facts(place)
-    return [
-        place.rank,
-        place.wiring.text(),
-        place.score.value * scale,
-        place.score.scatter * scale,
-        place.walk.speed_m_s * 1e3,
-        facts["drift"],
-        facts["turn"],
-        place.tied_with_best,
-        place.walk.wave.direction if place.settled else "screened only",
-        SMOOTH_WORDS[place.smooth] or None,
-        facts["reversed"],
-    ]
-
-
-def place_table_facts(place: Ranked) -> dict[str, object]:
-    """Drift, turn and the reversed wave of one place as the table shows them."""
-    back = place.reversed_walk
-    behind = None if back is None else f"rank {place.reversed_rank}: {back.travel_m * 1e3:.3g} mm"
-    return {"drift": place.walk.drift_m * 1e3, "turn": math.degrees(place.walk.turn_rad), "reversed": behind}
-
-
-def _smooth_lines(summary: SearchSummary) -> list[tuple[str, object]]:
-    lines: list[tuple[str, object]] = [
-        (
-            f"smooth wave, {SMOOTH_WORDS[place.smooth]}",
-            f"rank {place.rank}, {place.walk.travel_m * 1e3:.4g} mm a period: {place.wiring.text()}",
-        )
-        for place in summary.smooth
-    ]
-    lead = summary.facts["best_over_smooth_percent"]
-    if lead is not None:
-        lines.append(("best against the better smooth wave", f"{lead:+.1f} %"))
-    return lines
-
-
-def _screening_lines(summary: SearchSummary) -> list[tuple[str, object]]:
-    if summary.screening is None:
-        return []
-    text = f"{summary.screening.rank_correlation:.3f} over the {summary.screening.pairs} wirings walked both ways"
-    return [("rank correlation of short with settled walks", text)]

@@ -30,6 +30,9 @@ BOTH_LENGTHS = """
 SELECT s.score_{0}, l.score_{0} FROM walks s JOIN walks l ON l.settings = s.settings AND l.wiring = s.wiring
 WHERE s.settings = ? AND s.level <> 'settled' AND l.level = 'settled' AND s.status = 'scored' AND l.status = 'scored'
 """
+# A best wiring is said to wander when it drifts by more than this share of its travel or turns by more; chosen by us.
+WANDER_SHARE = 0.1
+WANDER_rad = math.radians(1.0)
 PAIRS_MIN = 3  # a rank correlation of fewer says nothing
 
 
@@ -86,6 +89,7 @@ def summary_of(task: SearchTask, facts: RunFacts, ranking: Ranking, ledger: Ledg
             "smooth_waves": [_smooth_facts(place) for place in smooth],
             "best_over_smooth_percent": best_over_smooth_percent(places, smooth),
             "screening": None if screening is None else vars(screening),
+            "notes": notes_on(places, ranking),
             "simulated_s": ranking.simulated_s(),
             "wall_s": facts.wall_s,
             "folder": str(folder),
@@ -112,6 +116,24 @@ def place_facts(place: Ranked) -> dict[str, Any]:
         "reversed_rank": place.reversed_rank,
         "reversed_travel_mm_per_period": None if back is None else back.travel_m * 1e3,
     }
+
+
+def notes_on(places: tuple[Ranked, ...], ranking: Ranking) -> list[str]:
+    """What a reader of the ranking should know besides: a best wiring that turns or drifts, and why wirings failed."""
+    notes = []
+    if places and _wanders(places[0]):
+        walk = places[0].walk
+        notes.append(
+            f"the best wiring drifts {walk.drift_m * 1e3:.2g} mm and turns {math.degrees(walk.turn_rad):.2g}° a period; it is "
+            "scored on the forward travel of its own heading (--objective straight counts both against it)"
+        )
+    remedies = {failure.outcome: failure.remedy for failure in ranking.failures()}
+    return notes + [f"{outcome}: {remedy}" for outcome, remedy in sorted(remedies.items()) if remedy]
+
+
+def _wanders(place: Ranked) -> bool:
+    walk = place.walk
+    return abs(walk.drift_m) > WANDER_SHARE * abs(walk.travel_m) or abs(walk.turn_rad) > WANDER_rad
 
 
 def _smooth_facts(place: Ranked) -> dict[str, Any]:
