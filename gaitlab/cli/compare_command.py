@@ -23,7 +23,7 @@ from gaitlab.cli.output import print_failure, print_json, print_table, progress,
 from gaitlab.cli.walk_facts import walk_facts
 from gaitlab.gait.records import Walk
 from gaitlab.robot.reader import read_robot
-from gaitlab.search.evaluate import evaluate
+from gaitlab.search.evaluate import Guarded, evaluate
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.workers import local_workers
 from gaitlab.trust.cautions import ESTIMATES
@@ -69,7 +69,7 @@ def command(
     """
     file = read_robot(robot_path)
     wirings = [wiring_for(file.robot, text) for text in wiring_texts]
-    pool = local_workers(evaluate, workers or os.cpu_count() or 1)
+    pool = local_workers(Guarded(evaluate), workers or os.cpu_count() or 1)
     total = len(distinct(file.robot, wirings)) * (1 + draws)
     try:
         with progress(total, "compare") as bar:

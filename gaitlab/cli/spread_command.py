@@ -20,7 +20,7 @@ from gaitlab.cli.options import (
 from gaitlab.cli.output import print_failure, print_json, progress
 from gaitlab.cli.spread_facts import print_spread, spread_facts
 from gaitlab.robot.reader import read_robot
-from gaitlab.search.evaluate import evaluate
+from gaitlab.search.evaluate import Guarded, evaluate
 from gaitlab.search.objective import OBJECTIVES
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.workers import Workers, local_workers
@@ -73,7 +73,7 @@ def command(
     wirings = tuple(wiring_for(file.robot, text) for text in wiring_texts)
     tolerances = tolerances_of(file.document, file.robot.tolerances)
     request = Request(tolerances, wirings, draws, seed, WalkSettings(engine=engine), objective)
-    pool = local_workers(evaluate, workers or os.cpu_count() or 1)
+    pool = local_workers(Guarded(evaluate), workers or os.cpu_count() or 1)
     found = drawn(request, pool)
     facts = spread_facts(found, tolerances)
     if all(w.summary.walks.share == 0 for w in found.wirings):

@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from gaitlab.errors import InputError, must
 from gaitlab.gait.outcomes import REMEDIES
 from gaitlab.gait.records import Walk
-from gaitlab.search.evaluate import REFUSED, WORKER_LOST, Job
+from gaitlab.search.evaluate import BROKE_DOWN, REFUSED, WORKER_LOST, Job
 from gaitlab.search.objective import score_of
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.workers import Workers
@@ -95,7 +95,7 @@ def spread(request: Request, workers: Workers, *, tell: Callable[[int], None] = 
 
 def outcome_of(walk: Walk, objective: str = "travel") -> Outcome:
     """What one walk counts as."""
-    started = walk.outcome in (*REMEDIES, REFUSED, WORKER_LOST)
+    started = walk.outcome in (*REMEDIES, REFUSED, WORKER_LOST, BROKE_DOWN)
     if not math.isfinite(walk.travel_m):
         return Outcome(walk.outcome, started, math.nan, math.nan, math.nan)
     return Outcome(walk.outcome, started, walk.travel_m, walk.speed_m_s, score_of(walk, objective).value)

@@ -11,7 +11,7 @@ import pytest
 from gaitlab.errors import InputError
 from gaitlab.robot.reader import read_robot
 from gaitlab.robot.records import Tolerance
-from gaitlab.search.evaluate import Evaluation, Job, failed_walk
+from gaitlab.search.evaluate import Evaluation, Job, evaluate, failed_walk
 from gaitlab.search.workers import InProcess
 from gaitlab.trust.robust import failing_quantile, robust_ranking
 from gaitlab.trust.spread import Request, spread
@@ -201,3 +201,43 @@ def test_a_wiring_that_fails_too_often_ranks_last():
 def test_a_quantile_is_a_share(quantile):
     with pytest.raises(InputError, match="quantile must be from 0 to 1"):
         robust_ranking(spread(request(FORWARD, draws=4), InProcess(formula)), quantile=quantile)
+
+
+def mirrored(document: dict) -> dict:
+    """The robot's mirror image: y and heading of every mounting turned, everything else as it was."""
+
+    def turned(part: dict) -> dict:
+        x, y, z = part["at_mm"]
+        return {**part, "at_mm": [x, -y, z], "heading_deg": -part.get("heading_deg", 0)}
+
+    return {**document, "body": {**document["body"], "leg": [turned(leg) for leg in document["body"]["leg"]]}}
+
+
+@pytest.mark.slow
+def test_a_mirrored_robot_gives_the_mirrored_spread():
+    """Real walks of a crooked robot and of its mirror image on the same draws: equal travel, opposite drift and turn."""
+    document = read_robot(ROW5).document
+    document["body"]["leg"][0]["at_mm"][1] = 4
+    document["body"]["leg"][1]["heading_deg"] = 25
+    document["body"]["leg"][3]["heading_deg"] = 15
+    given = [
+        Tolerance("foot.pad.friction", percent=20.0),
+        Tolerance("ring.valve.threshold_kPa", percent=10.0, each="stage"),
+    ]
+    walks = []
+    for robot in (document, mirrored(document)):
+        kept = []
+
+        def watched(job: Job, kept: list = kept) -> Evaluation:
+            done = evaluate(job)
+            kept.append(done.walk)
+            return done
+
+        found = spread(Request(tolerances_of(robot, given), (FORWARD,), 2, 4), InProcess(watched))
+        walks.append((found, kept))
+    (one, plain), (two, mirror) = walks
+    assert one.scores == pytest.approx(two.scores, rel=0.02)
+    for a, b in zip(plain, mirror, strict=True):
+        assert b.drift_m == pytest.approx(-a.drift_m, abs=0.02 * abs(a.travel_m))
+        assert b.turn_rad == pytest.approx(-a.turn_rad, abs=2e-3)
+    assert abs(plain[0].drift_m) > 0.02 * abs(plain[0].travel_m)
