@@ -22,7 +22,7 @@ from gaitlab.search.run_record import FinalRings, RunFacts, write_run
 from gaitlab.search.strategies.choice import StrategyChoice, strategy_of
 from gaitlab.search.summary import SearchSummary, summary_of
 from gaitlab.search.workers import Workers
-from gaitlab.trust.finalists import Checked, FinalistPlan, Task, checked_finalists, checked_record
+from gaitlab.trust.finalists import Checked, FinalistPlan, Task, check_plan, checked_finalists, checked_record
 from gaitlab.wiring.smooth import SmoothWaves
 
 RANKING_FILE = "ranking.csv"
@@ -56,6 +56,7 @@ def search_robot(
     Raises RunFolderError, with nothing overwritten, for a folder that is taken or belongs to another robot.
     """
     begin = time.perf_counter()
+    check_plan(plan.finalists, task.robot, task.document)
     waves = SmoothWaves.of(task.robot, task.space)
     strategy = strategy_of(plan.choice, task.space, waves)
     # Workers first: a cluster that does not answer must not leave an empty ledger behind.

@@ -12,9 +12,10 @@ from gaitlab.record_json import record_to_json
 from gaitlab.robot.records import Robot
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.workers import Workers
+from gaitlab.trust.draws import checked_draws
 from gaitlab.trust.places import Document
 from gaitlab.trust.recheck import Recheck, recheck_settings, rechecks
-from gaitlab.trust.robust import MEDIAN, RobustRank, robust_ranking
+from gaitlab.trust.robust import MEDIAN, RobustRank, check_quantile, robust_ranking
 from gaitlab.trust.spread import Request, Spread, spread
 from gaitlab.trust.tolerances import Tolerances, tolerances_of
 from gaitlab.wiring.wiring import Wiring
@@ -50,6 +51,17 @@ class Checked:
     robust: tuple[RobustRank, ...]
 
 
+def check_plan(plan: FinalistPlan, robot: Robot, document: Document) -> None:
+    """Refuse, before any walk, what a second look could not be made with.
+
+    Raises InputError for a quantile outside 0…1, tolerances that name no number and a draw that gives no robot.
+    """
+    check_quantile(plan.quantile)
+    if plan.draws:
+        for _ in checked_draws(tolerances_of(document, robot.tolerances), plan.draws, seed=plan.seed):
+            pass
+
+
 def walks_needed(plan: FinalistPlan, robot: Robot, settings: WalkSettings, finalists: int) -> int:
     """How many walks the second look will take (for a progress bar)."""
     count = min(plan.count, finalists)
@@ -64,10 +76,11 @@ def checked_finalists(
     *,
     tell: Callable[[int], None] = lambda done: None,
 ) -> Checked:
-    """Rechecks the first `plan.count` finalists (best first) and draws builds of them.
+    """Rechecks the first `plan.count` finalists (best first, at least one) and draws builds of them.
 
-    Raises InputError, before any walk, for tolerances that name no number or a draw that gives no robot.
+    Raises InputError for what `check_plan` refuses.
     """
+    check_plan(plan, task.robot, task.document)
     chosen = finalists[: plan.count]
     text = json.dumps(task.document)
     found = rechecks(

@@ -28,8 +28,7 @@ def robust_ranking(spread: Spread, *, quantile: float = MEDIAN) -> tuple[RobustR
     A low quantile (0.1) asks what nine builds of ten reach. A draw that did not walk counts as worse than any that did, so a
     wiring that fails too often ranks last, with a score of nan. Raises InputError for a quantile outside 0…1.
     """
-    if not 0.0 <= quantile <= 1.0:
-        raise InputError(must("quantile", "from 0 to 1", quantile, "0.5 is the median, 0.1 a cautious choice"))
+    check_quantile(quantile)
     scores = [failing_quantile(column, quantile) for column in spread.scores.T]
     texts = [w.wiring.text() for w in spread.wirings]
     order = sorted(range(len(scores)), key=lambda k: (-scores[k], texts[k]))
@@ -37,6 +36,12 @@ def robust_ranking(spread: Spread, *, quantile: float = MEDIAN) -> tuple[RobustR
         RobustRank(rank, scores[k] if math.isfinite(scores[k]) else math.nan, spread.wirings[k])
         for rank, k in enumerate(order, start=1)
     )
+
+
+def check_quantile(quantile: float) -> None:
+    """Raises InputError for a quantile outside 0…1."""
+    if not 0.0 <= quantile <= 1.0:
+        raise InputError(must("quantile", "from 0 to 1", quantile, "0.5 is the median, 0.1 a cautious choice"))
 
 
 def failing_quantile(scores: FloatArray, quantile: float) -> float:
