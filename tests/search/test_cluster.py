@@ -17,7 +17,7 @@ from search.test_run import searched
 
 from gaitlab.errors import InputError
 from gaitlab.search import cluster
-from gaitlab.search.cluster import cluster_workers
+from gaitlab.search.cluster import Certificates, cluster_workers
 from gaitlab.search.workers import InProcess
 
 TESTS = Path(__file__).parents[1]
@@ -58,11 +58,13 @@ def address_in(file: Path) -> str:
 
 
 @contextmanager
-def running_cluster(folder: Path) -> Iterator[tuple[str, list[subprocess.Popen[bytes]]]]:
+def running_cluster(
+    folder: Path, *tls: str, security: object = None
+) -> Iterator[tuple[str, list[subprocess.Popen[bytes]]]]:
     """A scheduler and two workers of one thread each; gives the address and the worker processes."""
     scheduler_file = folder / "scheduler.json"
     with processes() as running:
-        quiet = ("--no-dashboard",)
+        quiet = ("--no-dashboard", *tls)
         running.append(
             dask(
                 folder,
@@ -78,16 +80,16 @@ def running_cluster(folder: Path) -> Iterator[tuple[str, list[subprocess.Popen[b
         )
         address = address_in(scheduler_file)
         for _ in range(2):
-            options = ("--nthreads", "1", "--no-nanny", "--no-dashboard", "--local-directory", str(folder))
+            options = ("--nthreads", "1", "--no-nanny", "--no-dashboard", "--local-directory", str(folder), *tls)
             running.append(dask(folder, "worker", address, *options))
-        wait_for_workers(address, 2)
+        wait_for_workers(address, 2, security)
         yield address, running[1:]
 
 
-def wait_for_workers(address: str, number: int) -> None:
+def wait_for_workers(address: str, number: int, security: object) -> None:
     import distributed
 
-    client = distributed.Client(address, timeout=30, set_as_default=False)
+    client = distributed.Client(address, timeout=30, set_as_default=False, security=security)
     try:
         client.wait_for_workers(number, timeout=60)
     finally:
@@ -121,6 +123,35 @@ def test_workers_with_other_code_are_refused(tmp_path: Path, monkeypatch: pytest
     with running_cluster(tmp_path) as (address, _):
         monkeypatch.setattr(cluster, "code_version", OtherCode())
         with pytest.raises(InputError, match="workers with this code"):
+            cluster_workers(by_hash, address)
+
+
+def certificate(folder: Path) -> Certificates:
+    """A certificate for loopback that vouches for itself, made for this test alone."""
+    cert, key = folder / "cert.pem", folder / "key.pem"
+    words = ["req", "-x509", "-newkey", "rsa:2048", "-nodes", "-days", "2", "-subj", "/CN=127.0.0.1"]
+    words += ["-addext", "subjectAltName=IP:127.0.0.1", "-keyout", str(key), "-out", str(cert)]
+    subprocess.run(["openssl", *words], check=True, capture_output=True)
+    return Certificates(cert, cert, key)
+
+
+@pytest.mark.cluster
+def test_encrypted_cluster_gives_the_same_bytes_and_refuses_plain_callers(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    import distributed
+
+    files = certificate(tmp_path)
+    tls = ("--tls-ca-file", str(files.authority), "--tls-cert", str(files.certificate), "--tls-key", str(files.key))
+    security = distributed.Security(
+        tls_ca_file=str(files.authority), tls_client_cert=str(files.certificate), tls_client_key=str(files.key)
+    )
+    with running_cluster(tmp_path, "--protocol", "tls", *tls, security=security) as (address, _):
+        assert address.startswith("tls://")
+        here = searched(tmp_path / "here", InProcess(by_hash))
+        assert searched(tmp_path / "there", cluster_workers(by_hash, address, files)) == here
+        monkeypatch.setattr(cluster, "CONNECT_S", 3.0)
+        with pytest.raises(InputError, match="--cluster must be the address"):
             cluster_workers(by_hash, address)
 
 
