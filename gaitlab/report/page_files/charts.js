@@ -82,7 +82,7 @@ function valueAt(row, phase) {
 }
 
 function ringChart(parent, walk, colours) {
-  const size = 170, centre = size / 2, reach = 50, ring = walk.ring, stages = ring.vacuum_kPa.length;
+  const size = 210, centre = size / 2, reach = 56, ring = walk.ring, stages = ring.vacuum_kPa.length;
   const node = Math.min(13, 0.75 * Math.PI * reach / stages);
   const place = (position, radius = reach) => {
     const turn = 2 * Math.PI * position / stages;
@@ -116,7 +116,9 @@ function ringNode(svg, place, k, node, inlets, reach) {
     const [ax, ay] = place(k, reach + node), [bx, by] = place(k, reach + node + 6), [tx, ty] = place(k, reach + node + 13);
     draw(svg, "line", { x1: ax, y1: ay, x2: bx, y2: by, class: "tube" });
     const name = shortened(inlets[0]) + (inlets.length > 1 ? ` +${inlets.length - 1}` : "");
-    draw(svg, "text", { x: tx, y: ty + 4, class: "strong", "text-anchor": "middle" }, name);
+    const lean = (tx - place(0)[0]) / reach, anchor = Math.abs(lean) < 0.4 ? "middle" : lean > 0 ? "start" : "end";
+    const shift = anchor === "middle" ? 0 : lean > 0 ? -5 : 5;
+    draw(svg, "text", { x: tx + shift, y: ty + 4, class: "strong", "text-anchor": anchor }, name);
   }
   const disc = draw(svg, "circle", { cx: x, cy: y, r: node, class: "node" });
   const label = draw(svg, "text", { x, y: y + 4, class: "strong", "text-anchor": "middle" }, `${k + 1}`);

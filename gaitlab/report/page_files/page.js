@@ -48,7 +48,7 @@ function paintWalker(walker) {
   const { walk, canvas, way, movers } = walker;
   movers.forEach(move => move(state.periods));
   if (!canvas) return;
-  const ratio = window.devicePixelRatio || 1, width = canvas.clientWidth, height = Math.round(Math.max(210, 0.46 * width));
+  const ratio = window.devicePixelRatio || 1, width = canvas.clientWidth, height = Math.round(Math.min(Math.max(210, 0.46 * width), 360));
   if (canvas.width !== Math.round(width * ratio) || canvas.height !== Math.round(height * ratio)) {
     canvas.width = Math.round(width * ratio);
     canvas.height = Math.round(height * ratio);
