@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 from matplotlib.colors import to_hex, to_rgb
@@ -18,6 +19,7 @@ TRUNK = "#c9cfd4"
 TRUNK_TOP = "#e6e9eb"
 SWING_FOOT = "#ffffff"
 PALE_LIMIT = 0.45  # Rec. 601 luma below which an ink outline would drown, chosen by us
+SHADES = 255
 FAR_FADE = 0.45  # how much the farthest part pales towards the paper, chosen by us
 
 
@@ -54,7 +56,7 @@ def draw_body(
     near, far = min(depths), max(depths)
     deep = camera.axis == 2 and float(np.ptp(trace.foot_m[frame, :, 1])) > 0.5 * (far - near)
     for solid, points in ordered:
-        fade = FAR_FADE * (camera.distance(points) - near) / (far - near) if deep else 0.0
+        fade = round(FAR_FADE * (camera.distance(points) - near) / (far - near), 2) if deep else 0.0
         _draw_solid(canvas, solid, points, camera, _fill(solid, trace, frame, full_Pa), fade)
 
 
@@ -77,7 +79,12 @@ def _fill(solid: Solid, trace: Trace, frame: int, full_Pa: float) -> str:
 
 def vacuum_colour(vacuum_Pa: float, full_Pa: float) -> str:
     """The colour of a vacuum on the scale from atmosphere to `full_Pa`."""
-    return to_hex(vacuum_scale()(min(max(vacuum_Pa / full_Pa, 0.0), 1.0)))
+    return _shade(round(SHADES * min(max(vacuum_Pa / full_Pa, 0.0), 1.0)))
+
+
+@cache
+def _shade(step: int) -> str:
+    return to_hex(vacuum_scale()(step / SHADES))
 
 
 def _draw_solid(canvas: Canvas, solid: Solid, points_m: FloatArray, camera: Camera, fill: str, fade: float) -> None:
@@ -90,12 +97,14 @@ def _draw_solid(canvas: Canvas, solid: Solid, points_m: FloatArray, camera: Came
         canvas.polygon(hull(pixels), fill=faded(fill, fade), line=line, width=width)
 
 
+@cache
 def _outline(fill: str) -> str:
     """Ink round light things; round dark ones a paler shade of their own, so that ribs stay apart."""
     light = float(np.dot(to_rgb(fill), (0.299, 0.587, 0.114)))
     return INK if light > PALE_LIMIT else faded(fill, 0.5)
 
 
+@cache
 def faded(colour: str, share: float) -> str:
     """The colour moved towards the paper by a share of the way; a negative share moves it towards black."""
     a, b = np.array(to_rgb(colour)), np.array(to_rgb(PAPER if share >= 0.0 else "#000000"))

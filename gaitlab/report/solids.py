@@ -64,7 +64,8 @@ def _ribs(radius_m: float, length_m: float) -> list[FloatArray]:
 
 
 def rotated(points_m: FloatArray, quaternion: FloatArray) -> FloatArray:
-    """Points (n, 3) turned by a quaternion (x y z w): v + 2w (q × v) + 2 q × (q × v)."""
-    axis, real = quaternion[:3], quaternion[3]
-    across = np.cross(axis, points_m)
-    return np.asarray(points_m + 2.0 * real * across + 2.0 * np.cross(axis, across))
+    """Points (n, 3) turned by a unit quaternion (x y z w): R = I + 2 w [q] + 2 [q]², [q] the matrix of q × ."""
+    x, y, z, w = quaternion
+    across = np.array([[0.0, -z, y], [z, 0.0, -x], [-y, x, 0.0]])
+    turn = np.eye(3) + 2.0 * w * across + 2.0 * across @ across
+    return np.asarray(points_m @ turn.T)

@@ -8,6 +8,7 @@ from paper (atmosphere) to deep blue (evacuated), so that a grey copy still read
 from __future__ import annotations
 
 import io
+from functools import cache
 from pathlib import Path
 from typing import Any, Literal
 
@@ -72,11 +73,13 @@ STILL_METADATA: dict[str, dict[str, Any]] = {
 }
 
 
+@cache
 def vacuum_scale() -> LinearSegmentedColormap:
     """The colour scale of vacuum: 0 is atmosphere (paper), 1 is the most vacuum shown (deep blue)."""
     return LinearSegmentedColormap.from_list("vacuum", VACUUM_STOPS)
 
 
+@cache
 def rgb255(colour: str) -> tuple[int, int, int]:
     """A colour as the three bytes that Pillow takes."""
     red, green, blue = to_rgb(colour)
