@@ -10,6 +10,7 @@ import click
 from gaitlab.cli.options import (
     WholeNumber,
     engine_option,
+    force_option,
     json_option,
     robot_argument,
     seed_option,
@@ -17,8 +18,9 @@ from gaitlab.cli.options import (
     wiring_option,
     workers_option,
 )
-from gaitlab.cli.output import print_failure, print_json, progress
+from gaitlab.cli.output import print_failure, print_json, progress, write_new
 from gaitlab.cli.spread_facts import print_spread, spread_facts
+from gaitlab.errors import InputError, must
 from gaitlab.robot.reader import read_robot
 from gaitlab.search.evaluate import Guarded, evaluate
 from gaitlab.search.objective import OBJECTIVES
@@ -45,6 +47,12 @@ REMEDY = "no draw walked: see the outcomes, then try `gaitlab ring` and `gaitlab
 @click.option(
     "--objective", type=click.Choice(OBJECTIVES), default="travel", show_default=True, help="What counts as best."
 )
+@click.option(
+    "--plot",
+    type=click.Path(path_type=Path),
+    help="Draw the intervals into this PNG, SVG or PDF file, and the sensitivities beside it (NAME_sensitivities).",
+)
+@force_option
 @seed_option
 @engine_option
 @workers_option
@@ -54,6 +62,8 @@ def command(
     wiring_texts: tuple[str, ...],
     draws: int,
     objective: str,
+    plot: Path | None,
+    force: bool,
     seed: int,
     engine: str,
     workers: int | None,
@@ -68,21 +78,52 @@ def command(
     \b
       gaitlab spread robots/tray_row5.toml --wiring "a=1 b=3 c=5 d=2 e=4"
       gaitlab spread robots/tray_row5.toml --wiring "a=1 b=3 c=5 d=2 e=4" --wiring "a=1 b=4 c=2 d=5 e=3" --draws 32
+      gaitlab spread robots/tray_row5.toml --wiring "a=1 b=3 c=5 d=2 e=4" --plot spread.png
     """
     file = read_robot(robot_path)
     wirings = tuple(wiring_for(file.robot, text) for text in wiring_texts)
     tolerances = tolerances_of(file.document, file.robot.tolerances)
+    pictures = () if plot is None else _pictures(plot, force=force)
     request = Request(tolerances, wirings, draws, seed, WalkSettings(engine=engine), objective)
     pool = local_workers(Guarded(evaluate), workers or os.cpu_count() or 1)
     found = drawn(request, pool)
     facts = spread_facts(found, tolerances)
     if all(w.summary.walks.share == 0 for w in found.wirings):
         print_failure(NOTHING_WALKED, REMEDY, as_json=as_json, **facts)
+    _draw(found, pictures, force=force)
     if as_json:
         print_json(facts)
     else:
         print_spread(found, tolerances)
         click.echo(f"\n{ESTIMATES}")
+
+
+def _pictures(path: Path, *, force: bool) -> tuple[Path, Path]:
+    """Both files, looked at before the long run rather than after it."""
+    if path.suffix.lower() not in (".png", ".svg", ".pdf"):
+        raise InputError(must("--plot", "a file that ends in .png, .svg or .pdf", str(path)))
+    both = (path, path.with_name(f"{path.stem}_sensitivities{path.suffix}"))
+    there = [str(file) for file in both if file.exists()]
+    if there and not force:
+        raise InputError(must("--plot", "a file that does not exist yet", there[0], "add --force to replace it"))
+    if not path.parent.is_dir():
+        raise InputError(must("--plot", "in a folder that exists", str(path)))
+    return both
+
+
+def _draw(found: Spread, pictures: tuple[Path, ...], *, force: bool) -> None:
+    if not pictures:
+        return
+    from gaitlab.report import run_folder
+    from gaitlab.report.spread_plots import sensitivity_bars, spread_plot
+    from gaitlab.report.style import figure_bytes
+
+    rows = tuple(run_folder.WiringSpread(w.wiring, w.summary) for w in found.best_first())
+    kept = run_folder.Spread(found.draws, rows, found.sensitivities())
+    write_new(pictures[0], figure_bytes(spread_plot(kept), pictures[0].suffix.lower()), force=force)
+    if kept.sensitivities:
+        bars = figure_bytes(sensitivity_bars(kept.sensitivities), pictures[1].suffix.lower())
+        write_new(pictures[1], bars, force=force)
 
 
 def drawn(request: Request, pool: Workers) -> Spread:

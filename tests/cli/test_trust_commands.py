@@ -75,6 +75,25 @@ def test_spread_repeats_its_bytes(run: Any) -> None:
     assert once.out == twice.out
 
 
+def test_spread_draws_its_pictures(run: Any, tmp_path: Path) -> None:
+    plot = str(tmp_path / "spread.png")
+    words = ("spread", ROW5, "--wiring", FORWARD, "--draws", "16", "--plot", plot)
+    assert run(*words).code == 0
+    assert sorted(p.name for p in tmp_path.iterdir()) == ["spread.png", "spread_sensitivities.png"]
+    again = run(*words)
+    assert again.code == 2 and "--force" in again.err
+    assert run(*words, "--force").code == 0
+
+
+def test_a_picture_that_cannot_be_is_refused_before_the_walks(run: Any, tmp_path: Path) -> None:
+    def never(job: Job) -> Evaluation:
+        raise AssertionError("walked")
+
+    for name, says in (("spread.txt", "ends in .png"), ("absent/spread.png", "in a folder that exists")):
+        shown = run("spread", ROW5, "--wiring", FORWARD, "--plot", str(tmp_path / name), evaluating=never)
+        assert shown.code == 2 and says in shown.err
+
+
 def test_spread_of_falls_is_a_failed_run(run: Any) -> None:
     shown = run("spread", ROW5, "--wiring", FORWARD, "--draws", "4", "--json", evaluating=everybody_falls)
     facts = json.loads(shown.out)
