@@ -115,7 +115,7 @@ def steps(
     divisor = tolerance * scale
     linear, rejected = network.linearised(state), False
     for _ in range(STEPS_MAX):
-        step, error = _tried(network, linear, state, time, length, divisor)
+        step, error = tried(network, linear, state, time, length, divisor)
         factor = min(GROW, max(SHRINK, SAFETY * error ** (-1.0 / ORDER))) if error > 0 else GROW
         if error > 1.0:
             length, rejected = length * factor, True
@@ -129,7 +129,7 @@ def steps(
     raise ArithmeticError(f"the ring's equations cannot be followed past {time:.6g} s")
 
 
-def _tried(
+def tried(
     network: Network, linear: Linearised, state: FloatArray, time: float, length: float, divisor: FloatArray
 ) -> tuple[Step, float]:
     """One step of RODAS4 and its error over the tolerance (infinite when the state left the numbers)."""

@@ -1,0 +1,154 @@
+"""Speed of the ring: to a settled period against ngspice and against LSODA without Jacobian, and cost over N.
+
+Run from the root: python tests/benchmarks/ring_speed.py
+
+All rivals follow the same circuit from the same start over the same time, as far as the ring needs to settle, at settings
+that give the period as well as ours do (its error against a tight reference is printed beside each). Times are CPU
+seconds of the process that does the work, the best of several rounds.
+"""
+
+from __future__ import annotations
+
+import resource
+import sys
+import tempfile
+import time
+from pathlib import Path
+
+import numpy as np
+from scipy.integrate import solve_ivp
+
+ROOT = Path(__file__).resolve().parents[2]
+sys.path.insert(0, str(ROOT))
+
+from gaitlab.ring.circuit import Circuit, circuit_of
+from gaitlab.ring.periodic import Settings, Settled, nudged, settled
+from gaitlab.robot.records import Robot
+from gaitlab.wiring.wiring import Wiring
+from tests.ring.robots import in_order, tray, with_ring, with_supply
+from tests.ring.spice import iso_circuit, netlist, ngspice
+
+REFERENCE = Settings(loose=1e-6, tight=1e-7, near=1e-4, closed=1e-7)
+LSODA_LEAST, SPICE_LEAST = 3.0, 1.0  # least ratios that are asked for
+LINEAR_MOST = 1.25  # cost a period and stage at N = 31 over that at N = 5
+ROUNDS = 3
+
+
+def main() -> None:
+    """Prints every figure; exits 1 if a ratio is missed."""
+    circuit = iso_circuit(tray(), in_order(tray()))
+    start = nudged(circuit, circuit.rest(), 1e-2)
+    reference = period_of(settled(circuit, start, REFERENCE))
+    ours_s, run = ours(circuit, start)
+    report("gaitlab", ours_s, period_of(run), reference)
+    end_s = run.cuts_s[-1]
+    lsoda_s, lsoda_period = lsoda(circuit, start, end_s)
+    report("LSODA without Jacobian", lsoda_s, lsoda_period, reference)
+    spice_s, spice_period = spice(circuit, start, end_s)
+    report("ngspice", spice_s, spice_period, reference)
+    print(f"faster than LSODA by {lsoda_s / ours_s:.1f} (asked: {LSODA_LEAST:g})")
+    print(f"faster than ngspice by {spice_s / ours_s:.1f} (asked: above {SPICE_LEAST:g})")
+    growth = cost_over_stages()
+    missed = lsoda_s / ours_s < LSODA_LEAST or spice_s / ours_s < SPICE_LEAST or growth > LINEAR_MOST
+    sys.exit(1 if missed else 0)
+
+
+def report(name: str, seconds: float, period_s: float, reference_s: float) -> None:
+    """One line: who, CPU seconds, period and its error."""
+    print(f"{name:24s} {seconds:8.3f} s   period {period_s:.6f} s   off by {period_s / reference_s - 1.0:+.1e}")
+
+
+def period_of(run: Settled) -> float:
+    """Period of a run that closed."""
+    assert run.cycle is not None
+    return run.cycle.period_s
+
+
+def ours(circuit: Circuit, start: np.ndarray) -> tuple[float, Settled]:
+    """CPU seconds to a settled period, and the run."""
+    best, run = np.inf, None
+    for _ in range(ROUNDS):
+        begun = time.process_time()
+        run = settled(circuit, start)
+        best = min(best, time.process_time() - begun)
+    assert run is not None
+    return best, run
+
+
+def lsoda(circuit: Circuit, start: np.ndarray, end_s: float) -> tuple[float, float]:
+    """CPU seconds of scipy's LSODA on the same rates, in full swings, and the last period it finds."""
+    scale, net = circuit.scale(), circuit.network
+    begun = time.process_time()
+    found = solve_ivp(
+        lambda _, y: net.rates(y * scale) / scale,
+        (0.0, end_s + 0.2),
+        start / scale,
+        method="LSODA",
+        rtol=1e-5,
+        atol=1e-5,
+        dense_output=True,
+    )
+    seconds = time.process_time() - begun
+    times = np.linspace(0.0, end_s + 0.2, 40_000)
+    return seconds, last_period(times, circuit.gas.pressure_Pa - found.sol(times)[0] * scale[0])
+
+
+def spice(circuit: Circuit, start: np.ndarray, end_s: float) -> tuple[float, float]:
+    """CPU seconds of ngspice on the equivalent circuit, and the last period it finds."""
+    with tempfile.TemporaryDirectory() as folder:
+        out = Path(folder) / "ring.txt"
+        text = netlist(circuit, start, end_s=end_s + 0.2, step_s=2e-3, out=out, accuracy=1e-4)
+        before = resource.getrusage(resource.RUSAGE_CHILDREN)
+        run = ngspice(text, Path(folder), out)
+        after = resource.getrusage(resource.RUSAGE_CHILDREN)
+    seconds = after.ru_utime + after.ru_stime - before.ru_utime - before.ru_stime
+    return seconds, last_period(run.time_s, circuit.gas.pressure_Pa - run.output_Pa[0])
+
+
+def last_period(time_s: np.ndarray, vacuum: np.ndarray) -> float:
+    """Time between the last two rises through half of the peak."""
+    level = 0.5 * vacuum.max()
+    k = np.flatnonzero((vacuum[:-1] < level) & (vacuum[1:] >= level))
+    edges = time_s[k] + (level - vacuum[k]) / (vacuum[k + 1] - vacuum[k]) * (time_s[k + 1] - time_s[k])
+    return float(edges[-1] - edges[-2])
+
+
+def cost_over_stages() -> float:
+    """CPU seconds of one tight period for N = 5 … 31; returns cost a stage at 31 over that at 5."""
+    costs = {}
+    for stages in (5, 7, 11, 15, 21, 31):
+        robot = sized(stages)
+        circuit = circuit_of(robot, Wiring.of({i: k % stages + 1 for k, i in enumerate(robot.inlets())}))
+        run = settled(circuit, nudged(circuit, circuit.rest(), 1e-2))
+        costs[stages] = one_period(circuit, run)
+        print(f"N = {stages:2d}: {1e3 * costs[stages]:7.1f} ms a period of {period_of(run):.3f} s", end="")
+        print(f", {1e3 * costs[stages] / stages:5.2f} ms a stage")
+    growth = costs[31] / 31 / (costs[5] / 5)
+    print(f"cost a stage at 31 over 5: {growth:.2f} (asked: at most {LINEAR_MOST:g})")
+    return growth
+
+
+def sized(stages: int) -> Robot:
+    """The row's ring with N stages and a pump to match."""
+    robot = with_ring(tray(), stages=stages)
+    return with_supply(robot, free_flow_m3_s=tray().supply.free_flow_m3_s * stages / 5)
+
+
+def one_period(circuit: Circuit, run: Settled) -> float:
+    """CPU seconds to follow one more period from where a run ended, tightly."""
+    from gaitlab.ring.rosenbrock import steps
+
+    best = np.inf
+    for _ in range(ROUNDS):
+        begun = time.process_time()
+        for step in steps(
+            circuit.network, run.end, scale=circuit.scale(), tolerance=Settings().tight, first_s=1e-3, longest_s=0.05
+        ):
+            if step.end_s > period_of(run):
+                break
+        best = min(best, time.process_time() - begun)
+    return best
+
+
+if __name__ == "__main__":
+    main()
