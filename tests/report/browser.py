@@ -28,7 +28,8 @@ FLAGS = (
     "--remote-debugging-port=0",
     "--remote-allow-origins=*",
 )
-START_WAIT_S = 30.0
+START_WAIT_S = 90.0  # a loaded machine may take its time
+ANSWER_WAIT_S = 120.0
 
 
 class Browser:
@@ -54,7 +55,7 @@ class Browser:
                 return dict(answer["result"])
 
     async def _next(self) -> dict[str, Any]:
-        text = await self._socket.read_message()
+        text = await asyncio.wait_for(self._socket.read_message(), ANSWER_WAIT_S)
         assert text is not None, "the browser closed the connection"
         message: dict[str, Any] = json.loads(text)
         self._note(message.get("method", ""), message.get("params", {}))
