@@ -1,5 +1,6 @@
 """Tolerances resolved against robot documents: which numbers move, which move together, and what is refused."""
 
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -7,8 +8,9 @@ import pytest
 from gaitlab.errors import InputError
 from gaitlab.robot.reader import read_robot, robot_from_document
 from gaitlab.robot.records import Tolerance
+from gaitlab.trust.as_built import stage_parts
 from gaitlab.trust.build_parts import split_by_chain, split_by_stage
-from gaitlab.trust.draws import draws
+from gaitlab.trust.draws import checked_draws, draws
 from gaitlab.trust.tolerances import FROM_FILE, tolerances_of
 
 ROW5 = Path(__file__).parents[2] / "robots" / "tray_row5.toml"
@@ -118,3 +120,29 @@ def test_unused_type_cannot_vary_by_leg(row5):
     row5["foot"]["spare"] = dict(row5["foot"]["pad"])
     with pytest.raises(InputError, match="that some leg uses"):
         tolerances_of(row5, [Tolerance("foot.spare.friction", percent=5.0, each="leg")])
+
+
+@pytest.mark.parametrize("path", sorted(ROW5.parent.glob("*.toml")), ids=lambda p: p.stem)
+def test_every_robot_can_be_drawn(path):
+    """Contract over all shipped robots: their tolerances (or the defaults) resolve, and eight builds of each read."""
+    file = read_robot(path)
+    t = tolerances_of(file.document, file.robot.tolerances)
+    assert len(t.coordinates) >= len(t.listed) > 5
+    for draw in checked_draws(t, 8, seed=0):
+        built = robot_from_document(draw.document)
+        assert built.inlets() == file.robot.inlets()
+        assert built != file.robot
+
+
+@pytest.mark.parametrize("path", sorted(ROW5.parent.glob("*.toml")), ids=lambda p: p.stem)
+def test_splitting_leaves_every_robot_the_same_to_ring_and_body(path):
+    """The split document, undrawn, has the same parts at every stage and on every chain."""
+    file = read_robot(path)
+    split = robot_from_document(tolerances_of(file.document).document)
+    assert split.supply == file.robot.supply and split.inlets() == file.robot.inlets()
+    for stage in range(1, file.robot.ring.stages + 1):
+        assert stage_parts(split, stage) == stage_parts(file.robot, stage)
+    for one, two in zip(split.chains(), file.robot.chains(), strict=True):
+        for a, b in zip(one.units, two.units, strict=True):
+            own, meant = split.bellows_named(a.bellows), file.robot.bellows_named(b.bellows)
+            assert replace(own, name="") == replace(meant, name="")
