@@ -51,19 +51,21 @@ class BulletFeet:
             return
         com, turn, origin, speed, spin = (column[feet] for column in self._links_motion())
         sole = origin + rotated(turn, self._middles[feet]) - self._down[feet]
-        contacts = self._contacts()
-        force = np.array([_force(contacts[index]) for index in feet])
-        forward = rotated(turn, np.tile((1.0, 0.0, 0.0), (len(feet), 1)))
+        x, y, z, w = turn.T
+        forward = np.stack([1.0 - 2.0 * (y * y + z * z), 2.0 * (x * y + w * z)], axis=1)
+        force = self._forces()[feet]
         along, across = self._bristles.combed(forward, speed + cross(spin, sole - com), force)
-        for row, index in enumerate(feet):
-            self._set_friction(index, float(along[row]) / self._ground_friction)
-            self._push(self._links[index], across[row], sole[row])
+        for row, (coefficient, push, place) in enumerate(
+            zip(along.tolist(), across.tolist(), sole.tolist(), strict=True)
+        ):
+            self._set_friction(feet[row], coefficient / self._ground_friction)
+            self._push(self._links[feet[row]], push, place)
 
-    def _push(self, link: int, across_N: FloatArray, place: FloatArray) -> None:
+    def _push(self, link: int, across_N: list[float], place: list[float]) -> None:
         """Load a force in the plane for the next step."""
-        force = [float(across_N[0]), float(across_N[1]), 0.0]
+        force = [*across_N, 0.0]
         pybullet.applyExternalForce(
-            self._body, link - 1, force, place.tolist(), pybullet.WORLD_FRAME, physicsClientId=self._client
+            self._body, link - 1, force, place, pybullet.WORLD_FRAME, physicsClientId=self._client
         )
 
     def _set_friction(self, index: int, friction: float) -> None:
@@ -71,6 +73,18 @@ class BulletFeet:
             self._friction[index] = friction
             link = self._feet[index].link - 1
             pybullet.changeDynamics(self._body, link, lateralFriction=friction, physicsClientId=self._client)
+
+    def _forces(self) -> FloatArray:
+        """The floor's force (F, 3) on every foot: friction in the plane, load across it."""
+        forces = [[0.0, 0.0, 0.0] for _ in self._feet]
+        for force, points in zip(forces, self._contacts(), strict=True):
+            for point in points:
+                for at in FRICTION:
+                    size, way = point[at], point[at + 1]
+                    force[0] += size * way[0]
+                    force[1] += size * way[1]
+                force[2] += point[NORMAL_N]
+        return np.array(forces)
 
     def _contacts(self) -> list[list[Contact]]:
         """Contact points with the ground, by foot."""
@@ -92,12 +106,17 @@ class BulletFeet:
 
     def _links_motion(self) -> tuple[FloatArray, ...]:
         """For the link of every foot: centre of mass, orientation, frame origin, velocity of the centre, turning rate."""
-        rows = [self._root_motion() if link == 0 else self._link_motion(link) for link in self._links]
+        states = iter(self._states())
+        rows = [self._root_motion() if link == 0 else next(states) for link in self._links]
         return tuple(np.array(column) for column in zip(*rows, strict=True))
 
-    def _link_motion(self, link: int) -> tuple[Any, ...]:
-        state = self._state(link, velocity=1)
-        return state[0], state[5], state[4], state[6], state[7]
+    def _states(self) -> list[tuple[Any, ...]]:
+        """The same of all feet that are not on the root, in one call."""
+        links = [link - 1 for link in self._links if link > 0]
+        if not links:
+            return []
+        states = pybullet.getLinkStates(self._body, links, computeLinkVelocity=1, physicsClientId=self._client)
+        return [(state[0], state[5], state[4], state[6], state[7]) for state in states]
 
     def _root_motion(self) -> tuple[Any, ...]:
         origin, turn = self.root_frame()
@@ -105,21 +124,8 @@ class BulletFeet:
         speed, spin = pybullet.getBaseVelocity(self._body, physicsClientId=self._client)
         return com, turn, origin, speed, spin
 
-    def _state(self, link: int, velocity: int = 0) -> tuple[Any, ...]:
-        state: tuple[Any, ...] = pybullet.getLinkState(
-            self._body, link - 1, computeLinkVelocity=velocity, physicsClientId=self._client
-        )
-        return state
-
     def root_frame(self) -> tuple[Any, Any]:
         """Pose of the root's frame; Bullet itself keeps that of its principal axes."""
         principal = pybullet.getBasePositionAndOrientation(self._body, physicsClientId=self._client)
         place, turn = pybullet.multiplyTransforms(*principal, *self._from_root_com)
         return place, turn
-
-
-def _force(points: list[Contact]) -> tuple[float, float, float]:
-    """The floor's force on a foot: friction in the plane, load across it."""
-    forces = [(point[at], point[at + 1]) for point in points for at in FRICTION]
-    x, y = (sum(size * way[axis] for size, way in forces) for axis in (0, 1))
-    return x, y, sum(point[NORMAL_N] for point in points)
