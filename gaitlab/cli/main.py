@@ -32,6 +32,7 @@ COMMANDS = {
     "match": "Measured pressure traces become as-built parts and a diagnosis.",
     "sheet": "One A4 page for the bench from a saved run.",
     "page": "One self-contained HTML page from a saved run.",
+    "draw": "The pictures and films of a saved run.",
     "export": "The body as URDF, a walk as CSV.",
 }
 
