@@ -13,7 +13,7 @@ from gaitlab.body.checks import check_step
 from gaitlab.body.drive import Drive
 from gaitlab.body.engine import EngineSettings, FeetState
 from gaitlab.body.records import GRAVITY_M_S2, BodyModel, Link
-from gaitlab.body.rotation import principal
+from gaitlab.body.rotation import multiplied, principal, rotated
 
 FloatArray = NDArray[np.float64]
 Floats = Sequence[float]
@@ -43,6 +43,10 @@ class BulletEngine:
         self._plane = _plane(self._client, model)
         self._body = _multibody(self._client, model, settings)
         self._joints = list(range(len(model.joints)))
+        self._look_links = [look.link for look in model.looks]
+        self._look_centres = np.array([look.centre_m for look in model.looks])
+        self._look_turns = np.array([look.quaternion for look in model.looks])
+        self._masses = np.array([link.mass_kg for link in model.links])
         self._feet = BulletFeet(self._client, self._body, self._plane, model, settings)
 
     def joint_state(self) -> FloatArray:
@@ -79,29 +83,28 @@ class BulletEngine:
 
     def part_poses(self) -> tuple[FloatArray, FloatArray]:
         """Centres and orientations of all parts of the picture."""
-        frames = self._link_frames()
-        poses = [
-            pybullet.multiplyTransforms(*frames[look.link], look.centre_m, look.quaternion) for look in self.model.looks
-        ]
-        return np.array([pose[0] for pose in poses]), np.array([pose[1] for pose in poses])
+        places, turns = self._link_frames()
+        links = self._look_links
+        place = places[links] + rotated(turns[links], self._look_centres)
+        return place, multiplied(turns[links], self._look_turns)
 
     def centre_of_mass(self) -> FloatArray:
         """Centre of mass of the whole body."""
         states = pybullet.getLinkStates(self._body, self._joints, physicsClientId=self._client) if self._joints else ()
         root = pybullet.getBasePositionAndOrientation(self._body, physicsClientId=self._client)[0]
         places = [root, *(state[0] for state in states)]
-        masses = np.array([link.mass_kg for link in self.model.links])
-        return np.asarray(masses @ np.array(places) / masses.sum())
+        return np.asarray(self._masses @ np.array(places) / self._masses.sum())
 
     def close(self) -> None:
         """Disconnect the client."""
         pybullet.disconnect(physicsClientId=self._client)
 
-    def _link_frames(self) -> list[tuple[Floats, Floats]]:
-        """Poses of all link frames, root first."""
-        root = self._feet.root_frame()
+    def _link_frames(self) -> tuple[FloatArray, FloatArray]:
+        """Places and orientations of all link frames, root first."""
         states = pybullet.getLinkStates(self._body, self._joints, physicsClientId=self._client)
-        return [root, *((state[4], state[5]) for state in states)]
+        frames = [self._feet.root_frame(), *((state[4], state[5]) for state in states)]
+        places, turns = zip(*frames, strict=True)
+        return np.array(places), np.array(turns)
 
 
 def _set_physics(client: int, model: BodyModel, settings: EngineSettings) -> None:

@@ -25,6 +25,9 @@ class BulletFeet:
         self._client, self._body, self._plane = client, body, plane
         self._feet = model.feet
         self._links = [foot.link for foot in model.feet]
+        carriers = sorted(set(self._links))
+        self._jointed = [link - 1 for link in carriers if link > 0]
+        self._row_of_foot = [carriers.index(link) for link in self._links]
         self._middles = np.array([np.mean(foot.centres_m, axis=0) for foot in model.feet])
         root_com = pybullet.getDynamicsInfo(body, -1, physicsClientId=client)[3:5]
         self._from_root_com = pybullet.invertTransform(*root_com)
@@ -106,17 +109,14 @@ class BulletFeet:
 
     def _links_motion(self) -> tuple[FloatArray, ...]:
         """For the link of every foot: centre of mass, orientation, frame origin, velocity of the centre, turning rate."""
-        states = iter(self._states())
-        rows = [self._root_motion() if link == 0 else next(states) for link in self._links]
-        return tuple(np.array(column) for column in zip(*rows, strict=True))
-
-    def _states(self) -> list[tuple[Any, ...]]:
-        """The same of all feet that are not on the root, in one call."""
-        links = [link - 1 for link in self._links if link > 0]
-        if not links:
-            return []
-        states = pybullet.getLinkStates(self._body, links, computeLinkVelocity=1, physicsClientId=self._client)
-        return [(state[0], state[5], state[4], state[6], state[7]) for state in states]
+        rows = [self._root_motion()] if 0 in self._links else []
+        if self._jointed:
+            states = pybullet.getLinkStates(
+                self._body, self._jointed, computeLinkVelocity=1, physicsClientId=self._client
+            )
+            rows += [(state[0], state[5], state[4], state[6], state[7]) for state in states]
+        columns = zip(*rows, strict=True)
+        return tuple(np.array(column)[self._row_of_foot] for column in columns)
 
     def _root_motion(self) -> tuple[Any, ...]:
         origin, turn = self.root_frame()

@@ -34,7 +34,9 @@ class Drive:
         self._stop_gain = np.array([joint.stop_gain for joint in joints])
         implicit, explicit = damping_parts(model)
         self._ahead = _look_ahead(model, implicit, step_s=step_s, inertia_factor=inertia_factor)
-        self._damping = -np.hstack([implicit, explicit])
+        # w lies in the light motions, where C is even within each bellows: C w is a product element by element.
+        self._implicit = np.array([joint.damping for joint in joints])
+        self._explicit = explicit
         self._last: tuple[FloatArray, FloatArray, FloatArray] | None = None
 
     def pressure_torque(self, vacuum_Pa: FloatArray) -> FloatArray:
@@ -56,7 +58,7 @@ class Drive:
         speed_was, elastic_was, ahead_was = self._last or (speed, elastic, speed)
         ahead = self._ahead @ np.concatenate([2.0 * speed - speed_was, elastic - elastic_was, ahead_was])
         self._last = (speed, elastic, ahead)
-        return np.asarray(elastic + self._damping @ np.concatenate([ahead, speed]))
+        return np.asarray(elastic - self._implicit * ahead - self._explicit @ speed)
 
 
 class PressureDrive(Drive):

@@ -38,28 +38,37 @@ def centre_of_mass(model: BodyModel) -> FloatArray:
 
 def jacobian(model: BodyModel, link: int, point: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Linear and angular Jacobian (3, 6 + J) at `point` of a link: columns are root translation, root turn, joints."""
-    linear, angular = np.zeros((3, 6 + len(model.joints))), np.zeros((3, 6 + len(model.joints)))
-    linear[:, :3], angular[:, 3:6] = np.eye(3), np.eye(3)
-    linear[:, 3:6] = np.cross(np.eye(3), point).T
-    origins, above = link_origins(model), ancestry(model)[link]
-    for index, joint in enumerate(model.joints):
-        if above[index] and joint.kind == "prismatic":
-            linear[:, 6 + index] = joint.axis
-        elif above[index]:
-            linear[:, 6 + index] = np.cross(joint.axis, point - origins[index + 1])
-            angular[:, 6 + index] = joint.axis
+    linear, angular = _jacobians(model, link_origins(model), ancestry(model)[[link]], point[None])
+    return linear[0], angular[0]
+
+
+def _jacobians(
+    model: BodyModel, origins: FloatArray, above: NDArray[np.bool_], points: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Jacobians (n, 3, 6 + J) at `points` (n, 3) that move with the joints `above` (n, J)."""
+    axes = np.array([joint.axis for joint in model.joints]).reshape(-1, 3)
+    turns = np.array([joint.kind == "revolute" for joint in model.joints], dtype=float)
+    moved = np.cross(axes, points[:, None] - origins[1:])  # (n, J, 3), of a turning joint
+    linear = np.zeros((len(points), 3, 6 + len(axes)))
+    angular = np.zeros_like(linear)
+    linear[:, :, :3], angular[:, :, 3:6] = np.eye(3), np.eye(3)
+    linear[:, :, 3:6] = np.cross(np.eye(3), points[:, None]).transpose(0, 2, 1)
+    by_joint = turns[:, None] * moved + (1.0 - turns)[:, None] * axes
+    linear[:, :, 6:] = (above[:, :, None] * by_joint).transpose(0, 2, 1)
+    angular[:, :, 6:] = (above[:, :, None] * (turns[:, None] * axes)).transpose(0, 2, 1)
     return linear, angular
 
 
 def mass_matrix(model: BodyModel, inertia_factor: float) -> FloatArray:
     """Mass matrix (6 + J, 6 + J), joints at zero: Σ m JᵥᵀJᵥ + J_ωᵀ I J_ω over the links."""
-    size = 6 + len(model.joints)
-    total = np.zeros((size, size))
-    for index, origin in enumerate(link_origins(model)):
-        link = model.links[index]
-        linear, angular = jacobian(model, index, origin + link.com_m)
-        total += link.mass_kg * linear.T @ linear + angular.T @ link.inertia(inertia_factor) @ angular
-    return total
+    origins = link_origins(model)
+    points = origins + np.array([link.com_m for link in model.links])
+    linear, angular = _jacobians(model, origins, ancestry(model), points)
+    masses = np.array([link.mass_kg for link in model.links])
+    inertias = np.array([link.inertia(inertia_factor) for link in model.links])
+    moving = np.einsum("l,lik,lim->km", masses, linear, linear, optimize=True)
+    turning = np.einsum("lik,lij,ljm->km", angular, inertias, angular, optimize=True)
+    return np.asarray(moving + turning)
 
 
 def free_joint_mass(model: BodyModel, inertia_factor: float) -> FloatArray:

@@ -18,6 +18,9 @@ IMPRATIO = 10.0
 CONTACT_S = 0.004
 # Nearly rigid from 0.1 mm of penetration on (chosen by us; Bullet's own slop is a tenth of that).
 SOLIMP = (0.9, 0.99, 1e-3)
+# MuJoCo's cone ties sliding to lifting, so a sliding foot hops. The slower friction answers, the less it hops and the later it
+# sticks: at 8 ms travel is within 3 % of that at 4 ms and feet stay down half again as long; at 20 ms travel falls by 15 %
+# [measured on the row of five legs].
 FRICTION_S = 0.008
 KINDS = {"revolute": "hinge", "prismatic": "slide"}
 

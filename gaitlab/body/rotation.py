@@ -39,3 +39,10 @@ def rotated(quaternion: FloatArray, vector: FloatArray) -> FloatArray:
     part = quaternion[:, :3]
     once = 2.0 * cross(part, vector)
     return np.asarray(vector + quaternion[:, 3:] * once + cross(part, once))
+
+
+def multiplied(a: FloatArray, b: FloatArray) -> FloatArray:
+    """Products (n, 4) of quaternions: first `b`, then `a`."""
+    imaginary = a[:, 3:] * b[:, :3] + b[:, 3:] * a[:, :3] + cross(a[:, :3], b[:, :3])
+    real = a[:, 3:] * b[:, 3:] - np.sum(a[:, :3] * b[:, :3], axis=1, keepdims=True)
+    return np.hstack([imaginary, real])
