@@ -98,6 +98,8 @@ def command(robot_path: Path, as_json: bool, pictures: bool, **given: Any) -> No
     """
     file = read_robot(robot_path)
     require_odd_ring(file.robot)
+    for text in file.warnings:
+        warn(text)
     task = _task(file, given)
     choice = StrategyChoice(given["strategy"] or file.robot.search.strategy, given["budget"], given["seed"])
     plan = SearchPlan(

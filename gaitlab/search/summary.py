@@ -119,8 +119,8 @@ def place_facts(place: Ranked) -> dict[str, Any]:
 
 
 def notes_on(places: tuple[Ranked, ...], ranking: Ranking) -> list[str]:
-    """What a reader of the ranking should know besides: a best wiring that turns or drifts, and why wirings failed."""
-    notes = []
+    """What a reader of the ranking should know besides: the body's warnings, a best wiring that wanders, and why wirings failed."""
+    notes = list(places[0].walk.warnings) if places else []
     if places and _wanders(places[0]):
         walk = places[0].walk
         notes.append(

@@ -79,6 +79,20 @@ def search_robot(
         return replace(summary_of(task, facts, ranking, ledger, plan.folder), checked=checked)
 
 
+def refuse_unbuildable(task: SearchTask) -> None:
+    """Builds the body once, so that what no wiring can cure is said before any is walked.
+
+    Raises InputError for a body or a step that the engine refuses, MissingExtraError for an engine that is not installed.
+    """
+    from gaitlab.body.engine import EngineSettings
+    from gaitlab.body.engines import open_engine
+    from gaitlab.body.model import body_model
+
+    how, numerics = task.settings, task.robot.numerics
+    settings = EngineSettings(how.step_s or numerics.step_s, how.inertia_factor or numerics.inertia_factor, 0.0)
+    open_engine(how.engine, body_model(task.robot), settings).close()
+
+
 def open_ledger(plan: SearchPlan, task: SearchTask) -> Ledger:
     """A new ledger in the plan's folder, or with `resume` the one that is there. Raises RunFolderError."""
     path = plan.folder / LEDGER_FILE

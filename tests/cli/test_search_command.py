@@ -136,6 +136,16 @@ def test_limits_that_leave_no_wiring_are_refused(search: Any, tmp_path: Path) ->
     assert done.code == 2 and "fixed" in done.err
 
 
+def test_a_body_that_no_wiring_can_cure_is_refused_before_any_walk(search: Any, tmp_path: Path) -> None:
+    """The middle leg mounted 10 mm higher than the others never reaches the floor."""
+    short = tmp_path / "short.toml"
+    text = Path(ROW5).read_text(encoding="utf-8")
+    short.write_text(text.replace("at_mm = [0, 0, -6]", "at_mm = [0, 0, 4]"), encoding="utf-8")
+    done = search(robot=str(short))
+    assert done.code == 2 and "leg c: gap to the ground" in done.err
+    assert not (tmp_path / "run").exists()
+
+
 def test_nothing_that_walks_is_a_failed_run(search: Any) -> None:
     done = search("--json", evaluating=everybody_falls)
     facts = json.loads(done.out)

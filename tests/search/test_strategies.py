@@ -222,9 +222,9 @@ def test_candidates_of_a_large_space_are_near_the_best_and_at_random() -> None:
     assert not set(candidates.near(best)) & set(pool)
 
 
-def test_default_budget_is_a_seventh_within_bounds() -> None:
-    assert default_budget(WiringSpace.of(row(7, 7))) == 103
-    assert default_budget(WiringSpace.of(row(5, 5))) == 28
+def test_default_budget_is_an_eighth_within_bounds() -> None:
+    assert default_budget(WiringSpace.of(row(7, 7))) == 90
+    assert default_budget(WiringSpace.of(row(5, 5))) == 24
     assert default_budget(WiringSpace.of(row(9, 9))) == 400
 
 

@@ -25,15 +25,15 @@ class ProcessTuning:
     changes nothing. `daring`: standard deviations added to the mean. `settled_share` of the walks are settled ones at most.
     """
 
-    first: int = 16
+    first: int = 8
     batch: int = 4
-    daring: float = 1.5
+    daring: float = 2.0
     settled_share: float = 0.06
 
 
 def default_budget(space: WiringSpace) -> int:
-    """A seventh of a small space, at least 40 walks and at most 400; chosen by us."""
-    return min(space.distinct + 4, max(40, min(400, round(space.distinct / 7))))
+    """An eighth of the wirings, at least 24 walks and at most 400; chosen by us on the tables of the benchmark."""
+    return min(space.distinct + 4, max(24, min(400, round(space.distinct / 8))))
 
 
 class ProcessSearch:
