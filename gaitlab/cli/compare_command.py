@@ -22,6 +22,7 @@ from gaitlab.cli.options import (
 from gaitlab.cli.output import print_failure, print_json, print_table, progress, warn
 from gaitlab.cli.walk_facts import walk_facts
 from gaitlab.gait.records import Walk
+from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import read_robot
 from gaitlab.search.evaluate import Guarded, evaluate
 from gaitlab.search.settings import WalkSettings
@@ -68,6 +69,7 @@ def command(
       gaitlab compare robots/tray_row5.toml --wiring "a=1 b=3 c=5 d=2 e=4" --wiring "a=1 b=2 c=3 d=4 e=5" --draws 0
     """
     file = read_robot(robot_path)
+    require_odd_ring(file.robot)
     wirings = [wiring_for(file.robot, text) for text in wiring_texts]
     pool = local_workers(Guarded(evaluate), workers or os.cpu_count() or 1)
     total = len(distinct(file.robot, wirings)) * (1 + draws)

@@ -21,6 +21,7 @@ from gaitlab.cli.options import (
 from gaitlab.cli.output import print_failure, print_json, progress, write_new
 from gaitlab.cli.spread_facts import print_spread, spread_facts
 from gaitlab.errors import InputError, must
+from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import read_robot
 from gaitlab.search.evaluate import Guarded, evaluate
 from gaitlab.search.objective import OBJECTIVES
@@ -81,6 +82,7 @@ def command(
       gaitlab spread robots/tray_row5.toml --wiring "a=1 b=3 c=5 d=2 e=4" --plot spread.png
     """
     file = read_robot(robot_path)
+    require_odd_ring(file.robot)
     wirings = tuple(wiring_for(file.robot, text) for text in wiring_texts)
     tolerances = tolerances_of(file.document, file.robot.tolerances)
     pictures = () if plot is None else _pictures(plot, force=force)

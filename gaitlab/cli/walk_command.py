@@ -23,6 +23,7 @@ from gaitlab.cli.output import json_text, print_facts, print_failure, print_json
 from gaitlab.cli.walk_facts import footfall_rows, walk_facts, walk_rows
 from gaitlab.errors import InputError, RunFolderError, must
 from gaitlab.gait.outcomes import WALKED
+from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import read_robot
 
 if TYPE_CHECKING:
@@ -83,8 +84,8 @@ def command(
     """Walk one wiring and measure it: travel, speed, drift, slip, footfalls, wave, margins.
 
     The ring is solved under the load of this wiring and drives the body. Distances are estimates, good to 20–30 %. Refused
-    (exit 2): a wiring that does not fit the robot. A ring that does not run, a fall, a walk that never settles: exit 1, with
-    its outcome and a remedy.
+    (exit 2): a wiring that does not fit the robot, an even ring (unless --sequence stands in for it). A ring that does not
+    run, a fall, a walk that never settles: exit 1, with its outcome and a remedy.
 
     \b
       gaitlab walk robots/tray_row5.toml --wiring "a=1 b=3 c=5 d=2 e=4"
@@ -93,6 +94,8 @@ def command(
     file = read_robot(robot_path)
     wiring = wiring_for(file.robot, wiring_text)
     _check_ideal(sequence, period_s, vacuum_kPa)
+    if sequence is None:
+        require_odd_ring(file.robot)
     started = time.perf_counter()
     how = {
         "engine": engine,

@@ -149,7 +149,7 @@ def test_legal_but_unlikely_numbers_are_named_warnings(tmp_path: Path) -> None:
     from tests.robot.documents import ROW5
 
     text = (
-        ROW5.replace("threshold_kPa = 16", "threshold_kPa = 60")
+        ROW5.replace("threshold_kPa = ", "threshold_kPa = 60 # ")
         .replace("friction = 0.6", "friction = 1.2")
         .replace("bend_damping_ms = 40", "bend_damping_ms = 5")
         .replace("rest_mL = 2.4", "rest_mL = 24")
