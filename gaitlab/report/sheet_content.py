@@ -7,7 +7,17 @@ from dataclasses import dataclass
 
 from gaitlab.report.pump_plot import L_MIN_ANR
 from gaitlab.report.run_folder import SavedRun
-from gaitlab.report.words import KPA, MM, number, rechecks_text, reversed_text, source_text, speed_estimate, speed_text
+from gaitlab.report.words import (
+    KPA,
+    MM,
+    course_text,
+    number,
+    rechecks_text,
+    reversed_text,
+    source_text,
+    speed_estimate,
+    speed_text,
+)
 from gaitlab.ring.tubing import tube_lengths
 from gaitlab.ring.waves import RingRun
 from gaitlab.robot.circuit import FixedVacuum, Pump, PumpTable
@@ -98,6 +108,7 @@ def _expected(run: SavedRun) -> tuple[tuple[str, str], ...]:
             "Travel",
             f"{number(MM * walk.travel_m)} mm per period, ±{number(MM * walk.travel_scatter_m)} between periods",
         ),
+        ("Course", course_text(walk)),
         ("Speed", speed_text(estimate)),
     ]
     if estimate is not None:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 
+from gaitlab.gait.records import Walk
 from gaitlab.report.run_folder import RankedWiring, SavedRun, WiringSpread
 from gaitlab.trust.speed import SpeedEstimate, estimate_from_draws, estimate_from_walk
 
@@ -75,6 +76,21 @@ def _reversed_verb(share: float) -> str:
     if share < MUCH_SLOWER:
         return "still walks forward, but much slower"
     return "walks forward as well, at much the same speed" if share < 1.0 / MUCH_SLOWER else "walks faster"
+
+
+def course_text(walk: Walk) -> str:
+    """Drift and turn of a walk with their sides (left is positive in the records)."""
+    if not (math.isfinite(walk.drift_m) and math.isfinite(walk.turn_rad)):
+        return "not known"
+    drift, turn = MM * walk.drift_m, math.degrees(walk.turn_rad)
+    return f"drifts {_sided(drift, ' mm')}, turns {_sided(turn, '°')} per period"
+
+
+def _sided(value: float, unit: str) -> str:
+    text = number(abs(value))
+    if float(text) == 0.0:
+        return f"{text}{unit}"
+    return f"{text}{unit} to the {'left' if value > 0.0 else 'right'}"
 
 
 def rechecks_text(run: SavedRun) -> str:

@@ -19,7 +19,7 @@ from gaitlab.report.paper import broken, text_width_mm
 from gaitlab.report.run_folder import SavedRun, read_run
 from gaitlab.report.sheet import A4_MM, bench_sheet, sheet_files
 from gaitlab.report.sheet_content import sheet_content, tube_rows
-from gaitlab.report.words import number, reversed_text, speed_estimate
+from gaitlab.report.words import course_text, number, reversed_text, speed_estimate
 from gaitlab.robot.parts import Unit
 from gaitlab.wiring.wiring import Wiring
 from tests.report import synthetic
@@ -149,6 +149,18 @@ def test_everything_stays_on_the_paper(run: SavedRun, change: Callable[[SavedRun
 def test_the_reversed_wave_in_words(run: SavedRun, travel_m: float, words: str) -> None:
     backwards = dataclasses.replace(synthetic.walk(), travel_m=travel_m, outcome="fell_over")
     assert words in reversed_text(dataclasses.replace(run.best, reversed_walk=backwards))
+
+
+@pytest.mark.parametrize(
+    ("drift_m", "turn_rad", "words"),
+    [
+        (0.0012, -0.02, "drifts 1.2 mm to the left, turns 1.1° to the right per period"),
+        (-1e-6, 1e-5, "drifts 0.0 mm, turns 0.0° per period"),
+        (math.nan, 0.0, "not known"),
+    ],
+)
+def test_the_course_in_words(drift_m: float, turn_rad: float, words: str) -> None:
+    assert course_text(dataclasses.replace(synthetic.walk(), drift_m=drift_m, turn_rad=turn_rad)) == words
 
 
 def test_a_reverse_that_was_not_walked_is_not_invented(run: SavedRun) -> None:
