@@ -83,7 +83,8 @@ def _words(choose: str, sure: str, won: Chance | None, given: Walk, backward: Wa
 
 
 def _won_text(won: Chance, draws: int) -> str:
-    return f"as given it is the better one in {won.share:.0%} of {draws} draws, 90 % interval {won.low:.0%} to {won.high:.0%}"
+    share, low, high = (f"{100 * x:.0f}" for x in (won.share, won.low, won.high))
+    return f"as given it is the better one in {share} % of {draws} draws, 90 % interval {low} to {high} %"
 
 
 def _remarks(choose: str, better: Walk, worse: Walk) -> list[str]:

@@ -43,7 +43,7 @@ def estimate_from_walk(travel_m: float, period_s: float, body_length_m: float) -
     half = ENGINE_SPREAD * abs(travel_m)
     travel = (travel_m - half, travel_m, travel_m + half)
     speed = (travel[0] / period_s, travel[1] / period_s, travel[2] / period_s)
-    basis = f"one simulated walk, give or take {ENGINE_SPREAD:.0%} for the engine's own choices, build tolerances not counted"
+    basis = f"one simulated walk, give or take {100 * ENGINE_SPREAD:.0f} % for the engine's own choices, build tolerances not counted"
     return _estimate(speed, travel, body_length_m, basis)
 
 

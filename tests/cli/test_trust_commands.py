@@ -158,7 +158,7 @@ def test_compare_as_json_says_which_direction(run: Any) -> None:
 def test_compare_for_people(run: Any) -> None:
     shown = run("compare", ROW5, "--wiring", BACKWARD, "--draws", "32")
     assert shown.code == 0
-    assert "Run the wave reversed: sure (as given it is the better one in 0% of 32 draws" in shown.out
+    assert "Run the wave reversed: sure (as given it is the better one in 0 % of 32 draws" in shown.out
     assert "turning the ring block end for end" in shown.out and "estimates" in shown.out
 
 

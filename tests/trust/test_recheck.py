@@ -99,7 +99,7 @@ def test_direction_from_draws():
     scores = np.column_stack([np.linspace(5, 9, 64), np.linspace(1, 2, 64)])
     a = advice(walk_of(7), walk_of(1.5), scores=scores)
     assert (a.choose, a.sure) == (AS_GIVEN, "sure")
-    assert a.words.startswith("Run the wave as given: sure (as given it is the better one in 100% of 64 draws")
+    assert a.words.startswith("Run the wave as given: sure (as given it is the better one in 100 % of 64 draws")
     assert advice(walk_of(1.5), walk_of(7), scores=scores[:, ::-1]).choose == REVERSED
 
 
