@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
+IntArray = NDArray[np.int_]
 
 # Every fourth sample looks at the whole body too (centre of mass, blocks): it costs as much as a step (chosen by us).
 LOOK_EVERY = 4
@@ -21,8 +22,9 @@ class Motion:
     In the floor's frame, z the height above it, also on a slope: `position_m` (T, 3) of the root block's middle; `yaw_rad`,
     `pitch_rad` (nose up positive) and `roll_rad` (T,) of the root block; `foot_m` (T, F, 3) the middles of the feet;
     `sole_m_s` (T, F, 2) the speed at which their soles slide on the floor; `loaded` (T, F) whether they carry weight;
-    `contact_m` (T, G, 3) the spheres of all feet; `contact_loaded` (T, G) those that stand. At every `LOOK_EVERY`-th
-    instant: `centre_m` (L, 3) the centre of mass and `clearance_m` (L,) of the lowest corner of any block.
+    `contact_m` (T, G, 3) the spheres of all feet; `contact_loaded` (T, G) those that stand. At the
+    instants `look_at` (L,), every `LOOK_EVERY`-th: `centre_m` (L, 3) the centre of mass and `clearance_m` (L,) of the lowest
+    corner of any block.
     """
 
     samples: int
@@ -36,6 +38,7 @@ class Motion:
     loaded: BoolArray
     contact_m: FloatArray
     contact_loaded: BoolArray
+    look_at: IntArray
     centre_m: FloatArray
     clearance_m: FloatArray
 
@@ -48,12 +51,17 @@ class Motion:
         """The motion of the last `periods` periods."""
         start = len(self.position_m) - 1 - periods * self.samples
         arrays = {name: getattr(self, name)[start:] for name in _EVERY_SAMPLE}
-        looks = {name: getattr(self, name)[start // LOOK_EVERY :] for name in _EVERY_LOOK}
-        return Motion(samples=self.samples, sample_s=self.sample_s, **arrays, **looks)
+        keep = self.look_at >= start
+        looks = {name: getattr(self, name)[keep] for name in _EVERY_LOOK}
+        return Motion(
+            samples=self.samples, sample_s=self.sample_s, look_at=self.look_at[keep] - start, **arrays, **looks
+        )
 
 
 _EVERY_LOOK = ("centre_m", "clearance_m")
-_EVERY_SAMPLE = tuple(name for name in Motion.__dataclass_fields__ if name not in (*_EVERY_LOOK, "samples", "sample_s"))
+_EVERY_SAMPLE = tuple(
+    name for name in Motion.__dataclass_fields__ if name not in (*_EVERY_LOOK, "samples", "sample_s", "look_at")
+)
 
 
 def rotations(quaternion: FloatArray) -> FloatArray:

@@ -53,7 +53,8 @@ class Recorder:
         foot_m = np.array([f.position_m for f in feet])
         loaded = self._loaded(feet)
         contact_m, contact_loaded = _contacts(model, feet, loaded)
-        looks = self._looks[: (instants - 1) // LOOK_EVERY + 1]
+        look_at = np.arange(0, instants, LOOK_EVERY)
+        looks = self._looks[: len(look_at)]
         return Motion(
             samples=schedule.samples,
             sample_s=schedule.sample_s,
@@ -66,6 +67,7 @@ class Recorder:
             loaded=loaded,
             contact_m=contact_m,
             contact_loaded=contact_loaded,
+            look_at=look_at,
             centre_m=np.array([look[0] for look in looks]),
             clearance_m=np.array([look[1] for look in looks]),
         )

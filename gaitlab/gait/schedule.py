@@ -9,11 +9,12 @@ import numpy as np
 from scipy.interpolate import CubicSpline
 
 from gaitlab.errors import InputError, must
-from gaitlab.gait.motion import LOOK_EVERY, FloatArray
+from gaitlab.gait.motion import FloatArray
 from gaitlab.ring.waves import Waves
 
-# The body is looked at this often: 5 ms is a fiftieth of the fastest footfall met so far (chosen by us).
-SAMPLE_S = 0.005
+# The body is looked at this often: duty factors and stances are told to about 1 % of a usual period, and looking costs a
+# sixth of stepping (chosen by us).
+SAMPLE_S = 0.008
 SAMPLES_MIN = 20  # per period; fewer cannot tell a duty factor to 5 % (chosen by us)
 RAMP_SHARE = 0.6  # of the settling time goes into the ramp, the rest lets the body come to rest (chosen by us)
 
@@ -22,7 +23,7 @@ RAMP_SHARE = 0.6  # of the settling time goes into the ramp, the rest lets the b
 class Schedule:
     """One period as `samples` × `steps_per_sample` steps of `step_s`.
 
-    The step is the asked one made shorter, by under four samples in a period, so that a period is a whole number of steps:
+    The step is the asked one made shorter, by under one sample in a period, so that a period is a whole number of steps:
     one table of pressures then serves every period exactly and no phase error builds up.
     """
 
@@ -50,9 +51,8 @@ def schedule_of(period_s: float, step_s: float) -> Schedule:
     if not (math.isfinite(period_s) and period_s >= SAMPLES_MIN * step_s):
         rule = f"at least {SAMPLES_MIN} steps of {step_s * 1e3:g} ms"
         raise InputError(must("period", rule, f"{period_s * 1e3:g} ms", "shorten step_ms"))
-    looks = max(SAMPLES_MIN // LOOK_EVERY, math.ceil(period_s / (LOOK_EVERY * max(SAMPLE_S, step_s)) - 1e-9))
-    samples = looks * LOOK_EVERY
-    per_sample = max(1, math.ceil(period_s / (samples * step_s) - 1e-9))
+    per_sample = min(max(1, round(SAMPLE_S / step_s)), max(1, math.floor(period_s / (SAMPLES_MIN * step_s))))
+    samples = math.ceil(period_s / (per_sample * step_s) - 1e-9)
     return Schedule(period_s, period_s / (samples * per_sample), samples, per_sample)
 
 

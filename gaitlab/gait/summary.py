@@ -11,7 +11,7 @@ from gaitlab.body.dynamics import link_origins
 from gaitlab.body.records import BodyModel
 from gaitlab.gait import measures
 from gaitlab.gait.footfalls import duty_factors, folded, stance_intervals, swing_phases
-from gaitlab.gait.motion import LOOK_EVERY, FloatArray, Motion
+from gaitlab.gait.motion import FloatArray, Motion
 from gaitlab.gait.outcomes import remedy_of
 from gaitlab.gait.records import Walk, WaveReading
 from gaitlab.gait.schedule import Schedule
@@ -98,8 +98,8 @@ def feet_at_rest(model: BodyModel) -> FloatArray:
 
 def _margin(model: BodyModel, read: Motion) -> float:
     plumb = projected(read.centre_m, model.slope_rad)
-    looks = slice(None, None, LOOK_EVERY)
-    return smallest_margin(stability_margins(read.contact_m[looks], read.contact_loaded[looks], plumb))
+    contacts, standing = read.contact_m[read.look_at], read.contact_loaded[read.look_at]
+    return smallest_margin(stability_margins(contacts, standing, plumb))
 
 
 def failed_walk(run: Run, motion: Motion, outcome: str) -> Walk:

@@ -29,6 +29,7 @@ def standing(periods: int = 1) -> Motion:
         loaded=np.ones((instants, 2), dtype=bool),
         contact_m=np.zeros((instants, 4, 3)),
         contact_loaded=np.ones((instants, 4), dtype=bool),
+        look_at=np.arange(0, instants, LOOK_EVERY),
         centre_m=np.tile([0.0, 0.0, 0.04], (looks, 1)),
         clearance_m=np.full(looks, 0.03),
     )
@@ -74,6 +75,7 @@ def test_last_periods_are_cut_from_the_end() -> None:
     assert last.position_m[0, 0] == 2 * SAMPLES
     assert last.clearance_m[0] == 2 * SAMPLES // LOOK_EVERY
     assert len(last.clearance_m) == SAMPLES // LOOK_EVERY + 1
+    np.testing.assert_array_equal(last.look_at, np.arange(0, SAMPLES + 1, LOOK_EVERY))
 
 
 def test_every_outcome_but_success_has_a_remedy() -> None:
