@@ -53,9 +53,11 @@ def search_robot(
 ) -> SearchSummary:
     """Searches the wirings of a robot and leaves ledger, ranking.csv, run.json and traces in the plan's folder.
 
-    Raises RunFolderError, with nothing overwritten, for a folder that is taken or belongs to another robot.
+    Raises RunFolderError, with nothing overwritten, for a folder that is taken or belongs to another robot; InputError for a
+    body that cannot be built and for tolerances that cannot be drawn.
     """
     begin = time.perf_counter()
+    refuse_unbuildable(task)
     check_plan(plan.finalists, task.robot, task.document)
     waves = SmoothWaves.of(task.robot, task.space)
     strategy = strategy_of(plan.choice, task.space, waves)
