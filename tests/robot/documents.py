@@ -9,7 +9,9 @@ from typing import Any
 
 ROOT = Path(__file__).resolve().parents[2]
 ROBOTS = sorted((ROOT / "robots").glob("*.toml"))
-ROW5 = (Path(__file__).parent / "good" / "row5.toml").read_text(encoding="utf-8")  # kept as it is, whatever the robots become
+ROW5 = (Path(__file__).parent / "good" / "row5.toml").read_text(
+    encoding="utf-8"
+)  # kept as it is, whatever the robots become
 
 
 def row5() -> dict[str, Any]:
