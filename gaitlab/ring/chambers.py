@@ -15,9 +15,7 @@ from gaitlab.air.lookup import RowTable, hermite_rows
 from gaitlab.body.bellows import BellowsLaw
 from gaitlab.ring.waves import FloatArray
 
-KNOTS = (
-    512  # of a table from vacuum to 1.2 atmospheres; errors are then below 5e-6, at the solid limit's corner (see the tests)
-)
+KNOTS = 512  # of a table from vacuum to 1.2 atmospheres; errors are then below 5e-6, at the solid limit's corner (see the tests)
 NEWTON_STEPS = 4  # from a start that is right to 1e-4
 LOWEST, HIGHEST = 1e-3, 1.2  # ends of a table in ambient pressures: nothing in a ring leaves them
 

@@ -81,7 +81,7 @@ def circuit_of_pattern(
         inlets = tuple(tuple(f"{k + 1}/{j + 1}" for j in range(len(s.loads))) for k, s in enumerate(pattern.stages))
     valves = tuple(_numbers(stage.valve) for stage in pattern.stages)
     laws = tuple(_law(load.bellows) for stage in pattern.stages for load in stage.loads)
-    manifold = manifold_of(pattern.supply, gas)
+    manifold = manifold_of(pattern.supply, gas, held_m3=_held_volume(pattern))
     network = _network(pattern, gas, valves, laws, manifold)
     return Circuit(pattern, inlets, held, gas, valves, laws, manifold, network)
 
@@ -115,6 +115,11 @@ def output_volumes(pattern: LoadPattern) -> list[float]:
     following = pattern.stages[1:] + pattern.stages[:1]
     pairs = zip(pattern.stages, following, strict=True)
     return [own.port_m3 + after.control_m3 + sum(_bore(pattern, load) for load in own.loads) for own, after in pairs]
+
+
+def _held_volume(pattern: LoadPattern) -> float:
+    """Volume [m³] that held bellows add to the manifold: they stand still, so their rest volume is near enough."""
+    return sum(load.bellows.rest_volume_m3 + _bore(pattern, load) for load in pattern.held)
 
 
 def _bore(pattern: LoadPattern, load: Load) -> float:

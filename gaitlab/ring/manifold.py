@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from gaitlab.air.gas import Gas
 from gaitlab.air.supply import FixedLaw, SyringeLaw, supply_law
@@ -49,8 +49,13 @@ class Manifold:
     swept_m3_s: float = 0.0
 
 
-def manifold_of(supply: Supply, gas: Gas) -> Manifold:
-    """The manifold of a robot file's supply; a syringe is given as it stands when its first stroke begins."""
+def manifold_of(supply: Supply, gas: Gas, *, held_m3: float = 0.0) -> Manifold:
+    """The manifold of a robot file's supply, `held_m3` larger; a syringe as it stands when its first stroke begins."""
+    own = _own_manifold(supply, gas)
+    return replace(own, volume_m3=own.volume_m3 + held_m3)
+
+
+def _own_manifold(supply: Supply, gas: Gas) -> Manifold:
     law = supply_law(supply, gas)
     if isinstance(law, FixedLaw):
         return Manifold(StiffSource(law.rest_Pa), STIFF_VOLUME_M3, law.rest_Pa)

@@ -109,7 +109,7 @@ class _Log:
         for step in self._steps(network):
             self._noted(step, 1.0)
             self.state, self.time = step.after, step.end_s
-            longest = max((c.period_s for c in self.cycles), default=8.0 * network.stages * self.pace)
+            longest = max(8.0 * network.stages * self.pace, *(c.period_s for c in self.cycles), 0.0)
             last = max(held_s, self.cuts[-1][0]) if self.cuts else held_s
             if self.time - last > DEAD_AFTER * longest or self.time > LONGEST_S or len(self.cuts) >= CUTS_MAX:
                 return

@@ -2,9 +2,10 @@
 
 Run from the root: python tests/benchmarks/ring_speed.py
 
-All rivals follow the same circuit from the same start over the same time, as far as the ring needs to settle, at settings
-that give the period as well as ours do (its error against a tight reference is printed beside each). Times are CPU
-seconds of the process that does the work, the best of several rounds.
+Each rival follows the same circuit from the same start over the same time, as far as the ring needs to settle. LSODA gets
+the loosest tolerance of a list at which its period is as good as ours (errors against a tight reference are printed);
+ngspice its own default tolerance and a largest step of 5 ms. Times are CPU seconds of the process that does the
+work; ours are the best of several rounds.
 """
 
 from __future__ import annotations
@@ -13,6 +14,7 @@ import resource
 import sys
 import tempfile
 import time
+from collections.abc import Callable
 from pathlib import Path
 
 import numpy as np
@@ -28,7 +30,11 @@ from gaitlab.wiring.wiring import Wiring
 from tests.ring.robots import in_order, tray, with_ring, with_supply
 from tests.ring.spice import iso_circuit, netlist, ngspice
 
-REFERENCE = Settings(loose=1e-6, tight=1e-7, near=1e-4, closed=1e-7)
+REFERENCE = Settings(loose=1e-4, tight=1e-7, near=1e-3, closed=1e-7)
+Rival = Callable[[Circuit, np.ndarray, float, float, float], float]
+LSODA_TOLERANCES = (1e-3, 3e-4, 1e-4, 3e-5, 1e-5, 3e-6)
+EQUAL = 5e-5  # relative error of the period that counts as equal to ours, if ours happens to be smaller
+MORE_S = 0.2  # past the last cut, so that it is seen
 LSODA_LEAST, SPICE_LEAST = 3.0, 1.0  # least ratios that are asked for
 LINEAR_MOST = 1.25  # cost a period and stage at N = 31 over that at N = 5
 ROUNDS = 3
@@ -36,26 +42,31 @@ ROUNDS = 3
 
 def main() -> None:
     """Prints every figure; exits 1 if a ratio is missed."""
-    circuit = iso_circuit(tray(), in_order(tray()))
-    start = nudged(circuit, circuit.rest(), 1e-2)
-    reference = period_of(settled(circuit, start, REFERENCE))
-    ours_s, run = ours(circuit, start)
-    report("gaitlab", ours_s, period_of(run), reference)
-    end_s = run.cuts_s[-1]
-    lsoda_s, lsoda_period = lsoda(circuit, start, end_s)
-    report("LSODA without Jacobian", lsoda_s, lsoda_period, reference)
-    spice_s, spice_period = spice(circuit, start, end_s)
-    report("ngspice", spice_s, spice_period, reference)
-    print(f"faster than LSODA by {lsoda_s / ours_s:.1f} (asked: {LSODA_LEAST:g})")
-    print(f"faster than ngspice by {spice_s / ours_s:.1f} (asked: above {SPICE_LEAST:g})")
+    robot, wiring = tray(), in_order(tray())
+    against_lsoda = compared("ducts, as in the robot file", circuit_of(robot, wiring), lsoda)
+    against_spice = compared("data-sheet parts, as ngspice is given them", iso_circuit(robot, wiring), spice)
+    print(f"faster than LSODA by {against_lsoda:.1f} (asked: {LSODA_LEAST:g})")
+    print(f"faster than ngspice by {against_spice:.1f} (asked: above {SPICE_LEAST:g})")
     growth = cost_over_stages()
-    missed = lsoda_s / ours_s < LSODA_LEAST or spice_s / ours_s < SPICE_LEAST or growth > LINEAR_MOST
+    missed = against_lsoda < LSODA_LEAST or against_spice < SPICE_LEAST or growth > LINEAR_MOST
     sys.exit(1 if missed else 0)
 
 
-def report(name: str, seconds: float, period_s: float, reference_s: float) -> None:
-    """One line: who, CPU seconds, period and its error."""
-    print(f"{name:24s} {seconds:8.3f} s   period {period_s:.6f} s   off by {period_s / reference_s - 1.0:+.1e}")
+def compared(title: str, circuit: Circuit, rival: Rival) -> float:
+    """Ratio of a rival's CPU seconds to ours on one circuit."""
+    print(title)
+    start = nudged(circuit, circuit.rest(), 1e-2)
+    reference = period_of(settled(circuit, start, REFERENCE))
+    ours_s, run = ours(circuit, start)
+    error = abs(report("gaitlab", ours_s, period_of(run), reference))
+    return rival(circuit, start, run.cuts_s[-1], reference, error) / ours_s
+
+
+def report(name: str, seconds: float, period_s: float, reference_s: float) -> float:
+    """One line: who, CPU seconds, period and its relative error, which is returned."""
+    error = period_s / reference_s - 1.0
+    print(f"  {name:24s} {seconds:8.3f} s   period {period_s:.6f} s   off by {error:+.1e}", flush=True)
+    return error
 
 
 def period_of(run: Settled) -> float:
@@ -75,34 +86,39 @@ def ours(circuit: Circuit, start: np.ndarray) -> tuple[float, Settled]:
     return best, run
 
 
-def lsoda(circuit: Circuit, start: np.ndarray, end_s: float) -> tuple[float, float]:
-    """CPU seconds of scipy's LSODA on the same rates, in full swings, and the last period it finds."""
+def lsoda(circuit: Circuit, start: np.ndarray, end_s: float, reference_s: float, error: float) -> float:
+    """CPU seconds of scipy's LSODA on the same rates, in full swings, without Jacobian."""
     scale, net = circuit.scale(), circuit.network
-    begun = time.process_time()
-    found = solve_ivp(
-        lambda _, y: net.rates(y * scale) / scale,
-        (0.0, end_s + 0.2),
-        start / scale,
-        method="LSODA",
-        rtol=1e-5,
-        atol=1e-5,
-        dense_output=True,
-    )
-    seconds = time.process_time() - begun
-    times = np.linspace(0.0, end_s + 0.2, 40_000)
-    return seconds, last_period(times, circuit.gas.pressure_Pa - found.sol(times)[0] * scale[0])
+    times = np.linspace(0.0, end_s + MORE_S, 40_000)
+    for tolerance in LSODA_TOLERANCES:
+        begun = time.process_time()
+        found = solve_ivp(
+            lambda _, y: net.rates(y * scale) / scale,
+            (0.0, end_s + MORE_S),
+            start / scale,
+            method="LSODA",
+            rtol=tolerance,
+            atol=tolerance,
+            dense_output=True,
+        )
+        seconds = time.process_time() - begun
+        period = last_period(times, circuit.gas.pressure_Pa - found.sol(times)[0] * scale[0])
+        if abs(report(f"LSODA, rtol {tolerance:g}", seconds, period, reference_s)) <= max(error, EQUAL):
+            break
+    return seconds
 
 
-def spice(circuit: Circuit, start: np.ndarray, end_s: float) -> tuple[float, float]:
-    """CPU seconds of ngspice on the equivalent circuit, and the last period it finds."""
+def spice(circuit: Circuit, start: np.ndarray, end_s: float, reference_s: float, error: float) -> float:
+    """CPU seconds of ngspice on the equivalent circuit."""
     with tempfile.TemporaryDirectory() as folder:
         out = Path(folder) / "ring.txt"
-        text = netlist(circuit, start, end_s=end_s + 0.2, step_s=2e-3, out=out, accuracy=1e-4)
+        text = netlist(circuit, start, end_s=end_s + MORE_S, step_s=5e-3, out=out, accuracy=1e-3)
         before = resource.getrusage(resource.RUSAGE_CHILDREN)
         run = ngspice(text, Path(folder), out)
         after = resource.getrusage(resource.RUSAGE_CHILDREN)
     seconds = after.ru_utime + after.ru_stime - before.ru_utime - before.ru_stime
-    return seconds, last_period(run.time_s, circuit.gas.pressure_Pa - run.output_Pa[0])
+    report("ngspice", seconds, last_period(run.time_s, circuit.gas.pressure_Pa - run.output_Pa[0]), reference_s)
+    return seconds
 
 
 def last_period(time_s: np.ndarray, vacuum: np.ndarray) -> float:

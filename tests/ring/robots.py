@@ -28,7 +28,7 @@ def in_order(robot: Robot) -> Wiring:
 
 def unloaded(robot: Robot) -> Wiring:
     """Every inlet open to the air: the ring by itself."""
-    return Wiring.of({inlet: "open" for inlet in robot.inlets()})
+    return Wiring.of(dict.fromkeys(robot.inlets(), "open"))
 
 
 def with_ring(robot: Robot, **changes: Any) -> Robot:

@@ -61,7 +61,9 @@ def target_expression(valve: Valve, ambient_kPa: float, control: str, output: st
     return f"({valve.leak_fraction}+{1 - valve.leak_fraction}*{x}*{x}*(3-2*{x}))"
 
 
-def netlist(circuit: Circuit, start: FloatArray, *, end_s: float, step_s: float, out: Path, accuracy: float = 1e-5) -> str:
+def netlist(
+    circuit: Circuit, start: FloatArray, *, end_s: float, step_s: float, out: Path, accuracy: float = 1e-5
+) -> str:
     """The whole circuit as ngspice text; it writes time and every output's pressure to `out`."""
     lines = ["* vacuum ring", f"vatm atm 0 {circuit.gas.pressure_Pa / KPA}"]
     for stage in range(circuit.network.stages):

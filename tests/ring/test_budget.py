@@ -1,0 +1,52 @@
+"""The air budget: the draw against a count of fillings, the working point on the curve, the smallest pump by trial."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+
+from gaitlab.air.gas import gas_of
+from gaitlab.errors import InputError
+from gaitlab.ring.budget import air_budget, demand, pump_curve, scaled, smallest_free_flow
+from gaitlab.ring.pattern import LoadPattern, load_pattern
+from gaitlab.ring.solve import pattern_run
+from gaitlab.robot.circuit import FixedVacuum, Pump, PumpTable, Syringe
+from tests.ring.robots import in_order, tray, with_supply
+
+
+def pattern() -> LoadPattern:
+    return load_pattern(tray(), in_order(tray()))
+
+
+@pytest.mark.slow
+def test_budget_of_the_row() -> None:
+    """The mean draw lies on the pump's curve at the mean vacuum (a straight line, so means keep to it)."""
+    run = pattern_run(pattern())
+    budget = air_budget(pattern(), run)
+    vacuum, flow = pump_curve(pattern())
+    assert budget.alive
+    assert budget.flow_kg_s == pytest.approx(float(np.interp(run.supply_mean_Pa, vacuum, flow)), rel=1e-3)
+    emptied = sum(np.ptp(w) for w in run.output_vacuum_Pa) * 3e-6 / gas_of(tray().ambient).RT
+    assert run.air_kg_per_period > emptied  # each filling is drawn off again, and open valves let more through
+    below = scaled(tray().supply, 0.9 * budget.smallest_m3_s / tray().supply.free_flow_m3_s)  # type: ignore[union-attr]
+    assert pattern_run(load_pattern(with_supply(tray(), below), in_order(tray()))).outcome != "oscillates"
+
+
+def test_demand_rises_with_vacuum() -> None:
+    """More vacuum, more air; too little to run is nan."""
+    flows = demand(pattern(), [15e3, 35e3, 50e3])
+    assert np.isnan(flows[0]) and 0.0 < flows[1] < flows[2]
+
+
+def test_scaled_supplies() -> None:
+    """Free flows multiply; a house line becomes a pump of its vacuum."""
+    table = PumpTable((0.0, 50e3), (1e-4, 0.0), 5e-5)
+    assert scaled(table, 2.0) == PumpTable((0.0, 50e3), (2e-4, 0.0), 5e-5)
+    assert isinstance(scaled(FixedVacuum(50e3), 1.0), Pump)
+
+
+def test_a_syringe_has_no_smallest_pump() -> None:
+    """Asked for one it says what it needs."""
+    robot = with_supply(tray(), Syringe(1e-6, (0.0, 1.0), (0.0, 1e-4)))
+    with pytest.raises(InputError, match="supply must be a pump"):
+        smallest_free_flow(load_pattern(robot, in_order(robot)))
