@@ -135,7 +135,8 @@ def _orientation(run: SavedRun) -> tuple[str, ...]:
     stages = run.robot.ring.stages
     order = " → ".join(str(k + 1) for k in range(stages)) if stages <= 9 else f"1 → 2 → … → {stages}"
     lines = [
-        f"Mount the ring block so that its stages run {order} → 1 along the arrow on the block; mark output 1.",
+        f"Mount the ring block so that its stages run {order} → 1 along the arrow on the block; mark output 1. "
+        "Counted the other way round, the wave runs backwards.",
         reversed_text(run.best),
     ]
     if run.best.reversed_wiring is not None:

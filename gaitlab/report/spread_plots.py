@@ -59,7 +59,7 @@ def sensitivity_bars(sensitivities: Sequence[Sensitivity], *, title: str = "Meas
         ax.set_yticks(range(len(rows)), [row.name for row in rows])
         ax.set_ylim(len(rows) - 0.4, -0.6)
         ax.set_xlim(left=0)
-        ax.set_xlabel("share of the variance of travel (%), whisker: 90 % interval")
+        ax.set_xlabel("share of the variance of travel (%),\nwhisker: 90 % interval")
         ax.set_ylabel("number in the robot file")
         ax.set_title(title)
         bare(ax, grid="x")
