@@ -13,6 +13,7 @@ from gaitlab.search.identity import code_version
 from gaitlab.search.workers import IN_FLIGHT_PER_WORKER, ExecutorWorkers
 
 CONNECT_S = 10.0  # how long a scheduler may take to answer; chosen by us
+GONE = ("closing", "closed")  # states of a client that has given its scheduler up
 WORKERS_S = 10.0  # how long to wait for the first worker; chosen by us
 
 
@@ -44,6 +45,7 @@ def cluster_workers(evaluate: Evaluate, address: str, certificates: Certificates
         in_flight=IN_FLIGHT_PER_WORKER * number,
         lost=_losses(),
         stop=lambda executor: _stopped(executor, client),
+        reachable=lambda: client.status not in GONE,
     )
 
 

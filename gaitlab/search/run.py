@@ -17,7 +17,7 @@ from gaitlab.search.objective import Score, score_of
 from gaitlab.search.schema import SCORED, Row
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.strategies.ask_tell import Ask, Reading, Strategy
-from gaitlab.search.workers import Workers
+from gaitlab.search.workers import Workers, WorkersGone
 from gaitlab.wiring.space import WiringSpace
 
 NAN = math.nan
@@ -75,7 +75,8 @@ Watch = Callable[[Step], None]
 
 
 def run_search(task: SearchTask, strategy: Strategy, ledger: Ledger, workers: Workers, watch: Watch) -> bool:
-    """Runs `strategy` to its end; every walk is in the ledger when `watch` hears of it. False after Ctrl-C.
+    """Runs `strategy` to its end; every walk is in the ledger when `watch` hears of it. False after Ctrl-C
+    and when no worker can be reached any more.
 
     What is asked for depends on the strategy and on earlier readings in the order of their asking, not on the order in which
     workers end: the same rows come out for any number of workers and after any interruption.
@@ -89,7 +90,7 @@ def run_search(task: SearchTask, strategy: Strategy, ledger: Ledger, workers: Wo
                 strategy.tell(
                     [reading_of(ask, rows[job.key], task.objective) for ask, job in zip(asks, jobs, strict=True)]
                 )
-    except KeyboardInterrupt:
+    except (KeyboardInterrupt, WorkersGone):
         workers.close()
         return False
     return True

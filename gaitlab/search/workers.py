@@ -14,6 +14,7 @@ from dataclasses import dataclass, field
 from itertools import islice
 from typing import Protocol, TypeVar
 
+from gaitlab.errors import GaitlabError
 from gaitlab.search.evaluate import WORKER_LOST, Evaluate, Evaluation, Job, failed_walk
 from gaitlab.search.guard import follow_parent
 
@@ -23,7 +24,13 @@ REMEDY = "walk this wiring alone with `gaitlab walk`: it ends the process (memor
 ONE_THREAD = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")
 
 
+LOOK_EVERY_s = 5.0  # how often it is looked whether the executor is there at all; chosen by us
+
 Result = TypeVar("Result")
+
+
+class WorkersGone(GaitlabError):
+    """No worker can be reached any more: the search ends with what it has, as after Ctrl-C."""
 
 
 class Workers(Protocol):
@@ -64,7 +71,7 @@ class ExecutorWorkers:
 
     `lost` are the exceptions by which the executor says that the process at work died. Then every job in flight may be the
     culprit: those are run again one at a time, so that the next loss names it, and one that costs `LOSSES_MAX` workers
-    is given up as ``worker_lost``.
+    is given up as ``worker_lost``. `reachable` says whether there is an executor to wait for at all.
     """
 
     evaluate: Evaluate
@@ -72,6 +79,7 @@ class ExecutorWorkers:
     in_flight: int
     lost: tuple[type[BaseException], ...]
     stop: Callable[[Executor], None]
+    reachable: Callable[[], bool] = lambda: True
     _executor: Executor | None = None
     _losses: dict[str, int] = field(default_factory=dict)
 
@@ -83,7 +91,9 @@ class ExecutorWorkers:
             self._fill(running, waiting, suspects)
             if not running:
                 return
-            done, _ = wait(running, return_when=FIRST_COMPLETED)
+            done, _ = wait(running, timeout=LOOK_EVERY_s, return_when=FIRST_COMPLETED)
+            if not self.reachable():
+                raise WorkersGone("the cluster's scheduler is gone; usual fix: start it again and go on with --resume")
             lost: list[Job] = []
             for future in done:
                 job = running.pop(future)

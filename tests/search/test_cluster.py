@@ -119,6 +119,34 @@ def test_cluster_gives_the_same_bytes_though_a_worker_is_killed(tmp_path: Path) 
 
 
 @pytest.mark.cluster
+def test_a_lost_scheduler_ends_the_search_with_what_is_known(tmp_path: Path) -> None:
+    task = task_of(6, 5, inlets_per_output_max=2)
+    whole = searched(tmp_path / "whole", InProcess(by_hash), task=task)
+    with processes() as running:
+        scheduler_file = tmp_path / "scheduler.json"
+        words = ("--host", "127.0.0.1", "--port", "0", "--no-dashboard", "--scheduler-file", str(scheduler_file))
+        running.append(dask(tmp_path, "scheduler", *words))
+        address = address_in(scheduler_file)
+        options = ("--nthreads", "1", "--no-nanny", "--no-dashboard", "--local-directory", str(tmp_path))
+        running.append(dask(tmp_path, "worker", address, *options))
+        remote = cluster_workers(slowly, address)
+        evaluated, walks = remote.evaluated, []
+
+        def losing(jobs):  # type: ignore[no-untyped-def]
+            for job, done in evaluated(jobs):
+                walks.append(job)
+                if len(walks) == 40:
+                    os.kill(running[0].pid, signal.SIGKILL)
+                yield job, done
+
+        remote.evaluated = losing  # type: ignore[method-assign]
+        searched(tmp_path / "run", remote, task=task)
+    known = len((tmp_path / "run" / "ranking.csv").read_text().splitlines()) - 1
+    assert 40 <= known < 360
+    assert searched(tmp_path / "run", InProcess(by_hash), task=task, resume=True) == whole
+
+
+@pytest.mark.cluster
 def test_workers_with_other_code_are_refused(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     with running_cluster(tmp_path) as (address, _):
         monkeypatch.setattr(cluster, "code_version", OtherCode())
