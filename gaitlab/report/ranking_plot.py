@@ -39,8 +39,9 @@ def ranking_bars(ranking: Sequence[RankedWiring], *, limit: int = ROWS_SHOWN, ti
 
 
 def _draw_bars(ax: Axes, rows: Sequence[RankedWiring], labels: Sequence[str]) -> None:
+    shared = sum(row.tied_with_best for row in rows) > 1  # the best alone is tied with nobody
     for y, row in enumerate(rows):
-        _draw_one(ax, y, row)
+        _draw_one(ax, y, row, tied=shared and row.tied_with_best)
     ax.axvline(0.0, color=INK, lw=0.8)
     ax.set_yticks(
         range(len(rows)),
@@ -54,14 +55,16 @@ def _draw_bars(ax: Axes, rows: Sequence[RankedWiring], labels: Sequence[str]) ->
     bare(ax, grid="x")
 
 
-def _draw_one(ax: Axes, y: int, row: RankedWiring) -> None:
-    tied = row.tied_with_best
+def _draw_one(ax: Axes, y: int, row: RankedWiring, *, tied: bool) -> None:
     travel, scatter = MM * row.walk.travel_m, MM * row.walk.travel_scatter_m
     ax.barh(y, travel, height=0.62, color=SKY if tied else BLUE, edgecolor=INK, lw=0.6, hatch="////" if tied else None)
     if np.isfinite(scatter):
         ax.errorbar(travel, y, xerr=scatter, color=INK, capsize=2.5, lw=1.0)
     if row.reversed_walk is not None and np.isfinite(row.reversed_walk.travel_m):
         ax.plot(MM * row.reversed_walk.travel_m, y, marker="D", ms=5, mfc="white", mec=ORANGE, mew=1.4, ls="")
+    if row.smooth:
+        end = MM * max(row.walk.travel_m, 0.0 if row.reversed_walk is None else row.reversed_walk.travel_m, 0.0)
+        ax.annotate("smooth wave", (end, y), (8, 0), textcoords="offset points", va="center", fontsize=7, color=MUTED)
 
 
 def _legend() -> list[object]:

@@ -91,6 +91,14 @@ def test_the_ranking_shows_ties_and_reversed_waves(run_folder: Path) -> None:
     assert "a=1 b=4 c=2 d=5 e=3    1" in _texts(figure)
 
 
+def test_a_lonely_best_is_tied_with_nobody(run_folder: Path) -> None:
+    ranking = read_run(run_folder).ranking
+    alone = [dataclasses.replace(row, tied_with_best=row.rank == 1, smooth=int(row.rank == 3)) for row in ranking]
+    figure = ranking_bars(alone, limit=6)
+    assert not [patch for patch in figure.axes[0].patches if patch.get_hatch()]
+    assert _texts(figure).count("smooth wave") == 1
+
+
 def test_rising_phase_of_a_wave_that_rises_at_a_third() -> None:
     phase = np.arange(300) / 300
     row = 1e4 * (1 - np.cos(2 * np.pi * (phase - 1 / 3 + 0.25)))
