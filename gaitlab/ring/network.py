@@ -31,6 +31,9 @@ class FlowLaw(Protocol):
     def flow(self, p_a: FloatArray, p_b: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
         """Signed flow [kg/s] from a to b and its derivatives with both pressures, each (2N + n,)."""
 
+    def mass_flow(self, p_a: FloatArray, p_b: FloatArray) -> FloatArray:
+        """The flow alone."""
+
 
 class OpeningLaw(Protocol):
     """Where each membrane wants to be."""
@@ -39,6 +42,9 @@ class OpeningLaw(Protocol):
         self, control_Pa: FloatArray, output_Pa: FloatArray, opening: FloatArray
     ) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
         """Target opening 0…1 and its derivatives with control pressure, output pressure and opening; absolute Pa, each (N,)."""
+
+    def share(self, control_Pa: FloatArray, output_Pa: FloatArray, opening: FloatArray) -> FloatArray:
+        """The target alone."""
 
 
 class ChamberLaw(Protocol):
@@ -101,11 +107,13 @@ class Network:
 
     def rates(self, state: FloatArray) -> FloatArray:
         """dy/dt."""
-        return _Point(self, state).rates
+        at = Point(self, state)
+        flow = self.flows.mass_flow(*at.sides)
+        return at.rates(flow, self.openings.share(at.control, at.output, at.opening))
 
     def linearised(self, state: FloatArray) -> Linearised:
         """dy/dt and the blocks of its Jacobian."""
-        return Linearised(self, _Point(self, state))
+        return Linearised(self, Point(self, state))
 
 
 @dataclass(frozen=True)
@@ -142,45 +150,49 @@ class Places:
         return cls(n, m, stage, np.roll(stage, 1), bellows, side_a, side_b, incidence)
 
 
-class _Point:
-    """Everything evaluated at one state; what the Jacobian needs again is kept."""
+class Point:
+    """One state taken apart: what the flow and opening laws are asked for, and what comes of their answers."""
 
     __slots__ = (
         "bellows_slope",
-        "flow",
-        "flow_a",
-        "flow_b",
+        "control",
         "manifold",
+        "net",
         "opening",
+        "output",
         "part",
         "pump_slope",
-        "rates",
-        "target",
+        "sides",
         "volume",
     )
 
     def __init__(self, net: Network, state: FloatArray) -> None:
         at = net.places
         n, m = at.n, at.m
-        self.opening = state[n : 2 * n]
+        self.net = net
+        self.output, self.opening = state[:n], state[n : 2 * n]
         self.volume = float(state[m + 1])
         self.manifold = float(state[m]) / self.volume
         pressure = np.empty(m - n + 2)
-        pressure[:n] = output = state[:n]
+        pressure[:n] = self.output
         pressure[n : m - n], self.bellows_slope = net.chambers.pressure(state[2 * n : m])
         pressure[m - n], pressure[m - n + 1] = self.manifold, net.ambient_Pa
-        self.flow, self.flow_a, self.flow_b = net.flows.flow(pressure[at.side_a], pressure[at.side_b])
-        self.target = net.openings.target(output[at.before], output, self.opening)
+        self.sides = pressure[at.side_a], pressure[at.side_b]
+        self.control = self.output[at.before]
         self.part = np.ones(m)
         self.part[n : 2 * n] = self.opening
         if net.complement:
             self.part[:n] -= net.complement * self.opening
+
+    def rates(self, flow: FloatArray, target: FloatArray) -> FloatArray:
+        """dy/dt from the elements' flows [kg/s] and the membranes' targets."""
+        net, at = self.net, self.net.places
         pump, self.pump_slope = net.supply.mass_flow(self.manifold)
-        rates = at.incidence @ (self.part * self.flow)
-        rates[n : 2 * n] = (self.target[0] - self.opening) / net.travel_s
-        rates[m] -= net.gas_J_kg * pump
-        rates[m + 1] = net.swept_m3_s
-        self.rates = rates
+        rates = at.incidence @ (self.part * flow)
+        rates[at.n : 2 * at.n] = (target - self.opening) / net.travel_s
+        rates[at.m] -= net.gas_J_kg * pump
+        rates[at.m + 1] = net.swept_m3_s
+        return rates
 
 
 class Linearised:
@@ -190,18 +202,20 @@ class Linearised:
     Names say row and column: `px` is the derivative of dP/dt with X, c the controlling output, m the manifold's pressure.
     """
 
-    def __init__(self, net: Network, at: _Point) -> None:
+    def __init__(self, net: Network, at: Point) -> None:
         n, gas, fed = net.stages, net.gas_J_kg, net.fed_by
-        self.net, self.rates = net, at.rates
+        flow, flow_a, flow_b = net.flows.flow(*at.sides)
+        target, by_control, by_output, by_opening = net.openings.target(at.control, at.output, at.opening)
+        self.net, self.rates = net, at.rates(flow, target)
         per = gas / net.volume_m3
-        by_a, by_b = at.part * at.flow_a, at.part * at.flow_b
+        by_a, by_b = at.part * flow_a, at.part * flow_b
         tube_b = by_b[2 * n :] * at.bellows_slope
-        drawn = net.complement * at.flow[:n]
+        drawn = net.complement * flow[:n]
         self.pp = per * (by_b[n : 2 * n] - by_a[:n] - np.bincount(fed, by_a[2 * n :], n))
-        self.px = per * (at.flow[n : 2 * n] + drawn)
+        self.px = per * (flow[n : 2 * n] + drawn)
         self.pe, self.pm = -per[fed] * tube_b, -per * by_b[:n]
-        self.xc, self.xp = at.target[1] / net.travel_s, at.target[2] / net.travel_s
-        self.xx = (at.target[3] - 1.0) / net.travel_s
+        self.xc, self.xp = by_control / net.travel_s, by_output / net.travel_s
+        self.xx = (by_opening - 1.0) / net.travel_s
         self.ep, self.ee = gas * by_a[2 * n :], gas * tube_b
         self.mp, self.mx = gas * by_a[:n], -gas * drawn
         self.mm = gas * (float(by_b[:n].sum()) - at.pump_slope)

@@ -35,7 +35,7 @@ class Settings:
     moves the period of the demo robots by less than 1e-4 (tests/ring/test_accuracy.py).
     """
 
-    loose: float = 2e-3
+    loose: float = 5e-3
     tight: float = 2e-4
     near: float = 1e-2
     closed: float = 1e-4

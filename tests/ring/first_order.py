@@ -26,7 +26,10 @@ class Conductances:
         self.conductance = conductance
 
     def flow(self, p_a: FloatArray, p_b: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
-        return self.conductance * (p_a - p_b), self.conductance, -self.conductance
+        return self.mass_flow(p_a, p_b), self.conductance, -self.conductance
+
+    def mass_flow(self, p_a: FloatArray, p_b: FloatArray) -> FloatArray:
+        return self.conductance * (p_a - p_b)
 
 
 class Gain:
@@ -41,6 +44,9 @@ class Gain:
         free = 0.5 + self.gain * (1.0 - control_Pa - self.threshold)
         slope = np.where((free > 0.0) & (free < 1.0), -self.gain, 0.0)
         return np.clip(free, 0.0, 1.0), slope, np.zeros_like(free), np.zeros_like(free)
+
+    def share(self, control_Pa: FloatArray, output_Pa: FloatArray, opening: FloatArray) -> FloatArray:
+        return np.clip(0.5 + self.gain * (1.0 - control_Pa - self.threshold), 0.0, 1.0)
 
 
 def first_order_ring(

@@ -1,7 +1,7 @@
 """The same ring as a netlist for ngspice: behavioural sources from the closed forms, an outside solver for the equations.
 
-Node voltages are absolute pressures in kPa, currents are mass flows in mg/s, capacitances V/(R T) in mg/kPa. Parts must be
-known by data-sheet numbers (ISO 6358), whose law has a closed form; bellows must stay short of their solid limit.
+Node voltages are absolute pressures in kPa, currents are mass flows in mg/s, capacitances V/(R T) in mg/kPa. Resistors
+and valves are known by data-sheet numbers (ISO 6358), tubes are laminar; bellows must stay short of their solid limit.
 """
 
 from __future__ import annotations
@@ -15,9 +15,10 @@ from numpy.typing import NDArray
 
 from gaitlab.air.elements import FlowElements
 from gaitlab.air.iso import iso_law
+from gaitlab.air.section import section_of
 from gaitlab.air.valve import SIDE_BLEND_PA
 from gaitlab.ring.circuit import Circuit, circuit_of
-from gaitlab.robot.circuit import IsoPart, Pump, Valve
+from gaitlab.robot.circuit import IsoPart, Pump, RoundDuct, Valve
 from gaitlab.robot.records import Robot
 from gaitlab.wiring.wiring import Wiring
 
@@ -26,15 +27,45 @@ MG, KPA = 1e6, 1e3
 
 
 RESISTOR, OPEN_VALVE = IsoPart(1.35e-10, 0.35), IsoPart(4.2e-10, 0.35)  # about the flows of the row's own ducts
-TUBE = IsoPart(4e-9, 0.4)
+
+
+class ClosedFlows:
+    """Resistors and valves by data-sheet numbers, tubes laminar: m = (p_a² − p_b²)/a, each a law with a closed form."""
+
+    def __init__(self, parts: FlowElements, laminar: FloatArray) -> None:
+        self.parts, self.laminar = parts, laminar
+
+    def flow(self, p_a: FloatArray, p_b: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
+        """Flows and their derivatives with both pressures."""
+        k = self.parts.count
+        own = self.parts.flow(p_a[:k], p_b[:k])
+        a, b = p_a[k:], p_b[k:]
+        tubes = (a * a - b * b) / self.laminar, 2.0 * a / self.laminar, -2.0 * b / self.laminar
+        flow, by_a, by_b = (np.concatenate(pair) for pair in zip(own, tubes, strict=True))
+        return flow, by_a, by_b
+
+    def mass_flow(self, p_a: FloatArray, p_b: FloatArray) -> FloatArray:
+        """Flows alone."""
+        k = self.parts.count
+        tubes = (p_a[k:] ** 2 - p_b[k:] ** 2) / self.laminar
+        return np.concatenate((self.parts.mass_flow(p_a[:k], p_b[:k]), tubes))
+
+
+def laminar_Pa2_s_kg(circuit: Circuit) -> list[float]:
+    """a of each tube: the long laminar tube's p_a² − p_b² over mass flow."""
+    viscosity, rt = circuit.gas.viscosity_Pa_s(), circuit.gas.RT
+    loads = [load for stage in circuit.pattern.stages for load in stage.loads]
+    tubes = [section_of(RoundDuct(circuit.pattern.bore_m, load.tube_m)) for load in loads]
+    return [tube.laminar_Pa2_s_per_kg(viscosity, rt) for tube in tubes]
 
 
 def iso_circuit(robot: Robot, wiring: Wiring) -> Circuit:
-    """The robot's ring with every flow part known by data-sheet numbers, as the network solves it."""
+    """The robot's ring with flow laws in closed form, as the network solves it."""
     valve = replace(robot.ring.valve, open=OPEN_VALVE)
     circuit = circuit_of(replace(robot, ring=replace(robot.ring, resistor=RESISTOR, valve=valve)), wiring)
     n = circuit.network.stages
-    flows = FlowElements.of([RESISTOR] * n + [OPEN_VALVE] * n + [TUBE] * circuit.network.bellows, circuit.gas)
+    parts = FlowElements.of([RESISTOR] * n + [OPEN_VALVE] * n, circuit.gas)
+    flows = ClosedFlows(parts, np.array(laminar_Pa2_s_kg(circuit)))
     return replace(circuit, network=replace(circuit.network, flows=flows))
 
 
@@ -125,7 +156,7 @@ def _bellows(circuit: Circuit, j: int, start: FloatArray) -> list[str]:
     return [
         f"cq{j} q{j} 0 1 ic={held}",
         f"bb{j} b{j} 0 v=(-{linear}+sqrt({linear**2}+{4 * per_kPa}*v(q{j})))/{2 * per_kPa}",
-        f"bt{j} p{k} q{j} i={flow_expression(TUBE, circuit, f'p{k}', f'b{j}')}",
+        f"bt{j} p{k} q{j} i=(v(p{k})*v(p{k})-v(b{j})*v(b{j}))*{MG * KPA**2 / laminar_Pa2_s_kg(circuit)[j]}",
     ]
 
 

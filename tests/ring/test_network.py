@@ -66,6 +66,14 @@ def test_elimination_against_a_dense_solve(name: str, shift: float) -> None:
     assert np.max(np.abs((linear.solver(shift)(right) - dense) / scale)) < 1e-9
 
 
+@pytest.mark.parametrize("name", SUPPLIES)
+def test_rates_are_the_same_with_and_without_slopes(name: str) -> None:
+    """The short path, which asks flows and valves for values alone, gives the linearisation's own rates."""
+    circuit = circuit_on(name)
+    state = mixed_state(circuit)
+    assert circuit.network.rates(state) == pytest.approx(circuit.network.linearised(state).rates, rel=1e-13)
+
+
 def test_an_isolated_circuit_keeps_its_gas() -> None:
     """Everything that leaves one chamber enters another: with atmosphere and pump shut off, the sum of p V stays to rounding."""
     circuit = circuit_on("syringe")
