@@ -90,7 +90,11 @@ class BulletEngine:
 
     def centre_of_mass(self) -> FloatArray:
         """Centre of mass of the whole body."""
-        states = pybullet.getLinkStates(self._body, self._joints, physicsClientId=self._client) if self._joints else ()
+        states = (
+            pybullet.getLinkStates(self._body, self._joints, computeForwardKinematics=1, physicsClientId=self._client)
+            if self._joints
+            else ()
+        )
         root = pybullet.getBasePositionAndOrientation(self._body, physicsClientId=self._client)[0]
         places = [root, *(state[0] for state in states)]
         return np.asarray(self._masses @ np.array(places) / self._masses.sum())
@@ -101,7 +105,9 @@ class BulletEngine:
 
     def _link_frames(self) -> tuple[FloatArray, FloatArray]:
         """Places and orientations of all link frames, root first."""
-        states = pybullet.getLinkStates(self._body, self._joints, physicsClientId=self._client)
+        states = pybullet.getLinkStates(
+            self._body, self._joints, computeForwardKinematics=1, physicsClientId=self._client
+        )
         frames = [self._feet.root_frame(), *((state[4], state[5]) for state in states)]
         places, turns = zip(*frames, strict=True)
         return np.array(places), np.array(turns)

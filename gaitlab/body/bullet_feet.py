@@ -111,8 +111,13 @@ class BulletFeet:
         """For the link of every foot: centre of mass, orientation, frame origin, velocity of the centre, turning rate."""
         rows = [self._root_motion()] if 0 in self._links else []
         if self._jointed:
+            # Without forward kinematics the places are those of one step before.
             states = pybullet.getLinkStates(
-                self._body, self._jointed, computeLinkVelocity=1, physicsClientId=self._client
+                self._body,
+                self._jointed,
+                computeLinkVelocity=1,
+                computeForwardKinematics=1,
+                physicsClientId=self._client,
             )
             rows += [(state[0], state[5], state[4], state[6], state[7]) for state in states]
         columns = zip(*rows, strict=True)

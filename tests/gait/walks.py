@@ -25,6 +25,7 @@ BEST = {
     "quad_spine": "fl_lift=1 fl_swing=3 fr_lift=5 fr_swing=4 hl_lift=4 hl_swing=1 hr_lift=3 hr_swing=5 back=2",
     "sinuous6": "j1l=1 j1r=2 j1w=open j2l=3 j2r=4 j2w=open j3l=5 j3r=1 j3w=open "
     "j4l=2 j4r=3 j4w=open j5l=4 j5r=5 j5w=open j6l=1 j6r=2 j6w=open",
+    "tray_curl5": "a=1 b=2 c=4 d=3 e=5",
     "tray_row5": "a=1 b=3 c=5 d=2 e=4",
     "worm5": "a=1 b=3 c=5 d=2 e=4",
 }
