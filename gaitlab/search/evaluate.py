@@ -24,20 +24,25 @@ BROKE_DOWN = "broke_down"
 
 @dataclass(frozen=True)
 class Job:
-    """What an evaluation needs: the robot's document as JSON, a wiring, how to walk it, and the ledger's key for it."""
+    """What an evaluation needs: the robot's document as JSON, a wiring, how to walk it, and the ledger's key for it.
+
+    `ring` are the bytes of the ring's run under the wiring's load pattern where it has been solved before.
+    """
 
     document_json: str
     wiring: Wiring
     settings: WalkSettings
     key: str
+    ring: bytes | None = None
 
 
 @dataclass(frozen=True)
 class Evaluation:
-    """The walk that a job came to, and the wall time it took."""
+    """The walk that a job came to, the wall time it took, and the ring's run as bytes where it was solved for it."""
 
     walk: Walk
     wall_s: float
+    ring: bytes | None = None
 
 
 Evaluate: TypeAlias = Callable[[Job], Evaluation]
@@ -50,12 +55,17 @@ def evaluate(job: Job) -> Evaluation:
     cannot end a search.
     """
     from gaitlab.gait.walk import walk
+    from gaitlab.ring.pattern import load_pattern
     from gaitlab.ring.solve import ring_run
+    from gaitlab.ring.store import RunStore
 
     begin = time.perf_counter()
     robot, how = robot_of(job.document_json), job.settings
+    shelf: dict[str, bytes] = {}
     try:
-        ring = ring_run(robot, job.wiring)
+        if job.ring is not None:
+            shelf[load_pattern(robot, job.wiring).key()] = job.ring
+        ring = ring_run(robot, job.wiring, runs=RunStore(shelf))
         done, _ = walk(
             robot,
             job.wiring,
@@ -68,7 +78,8 @@ def evaluate(job: Job) -> Evaluation:
         )
     except InputError as error:
         done = failed_walk(job, REFUSED, str(error))
-    return Evaluation(done, time.perf_counter() - begin)
+    solved = next(iter(shelf.values()), None) if job.ring is None else None
+    return Evaluation(done, time.perf_counter() - begin, solved)
 
 
 @dataclass(frozen=True)

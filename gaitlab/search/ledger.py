@@ -18,6 +18,7 @@ from gaitlab.search.schema import COLUMNS, ROW_COLUMNS, Row, row_from, row_of
 from gaitlab.wiring.wiring import Wiring
 
 LOOKUP_SIZE = 500  # keys in one query; below SQLite's oldest limit of 999 variables
+RINGS_MAX = 1000  # solved rings kept, some 40 kB each; most patterns of a large space come up once; chosen by us
 AGAIN = (WORKER_LOST,)  # fates that say nothing about the wiring: walked again on --resume
 
 INSERT = f"INSERT OR IGNORE INTO walks ({', '.join(COLUMNS)}) VALUES ({', '.join('?' * len(COLUMNS))})"
@@ -75,6 +76,19 @@ class Ledger:
         """Rows of a query, one after the other."""
         with self.told_plainly() as connection:
             yield from connection.execute(query, values)
+
+    def ring(self, pattern: str) -> bytes | None:
+        """The run of the ring under the load pattern of that key, where it has been kept."""
+        found = next(self.select("SELECT run FROM rings WHERE pattern = ?", (pattern,)), None)
+        return None if found is None else bytes(found[0])
+
+    def keep_ring(self, pattern: str, run: bytes) -> None:
+        """Keeps a solved ring for other wirings of the same load pattern, up to `RINGS_MAX` of them."""
+        with self.told_plainly() as connection:
+            connection.execute(
+                "INSERT OR IGNORE INTO rings SELECT ?, ? WHERE (SELECT count(*) FROM rings) < ?",
+                (pattern, run, RINGS_MAX),
+            )
 
     def note_equals(self, pairs: Iterable[tuple[Wiring, Wiring]]) -> None:
         """Notes wirings that are equal by symmetry to the one that was walked."""

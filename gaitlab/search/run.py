@@ -5,10 +5,11 @@ from __future__ import annotations
 import json
 import math
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import Any
 
+from gaitlab.ring.pattern import load_pattern
 from gaitlab.robot.records import Robot
 from gaitlab.search.evaluate import Evaluation, Job
 from gaitlab.search.identity import Identity
@@ -110,16 +111,38 @@ def _walk_unknown(
     for ask, job in asked:
         if job.key in there:
             watch(Step(ask, Score(NAN, NAN), "", known=True))
-    for job, done in workers.evaluated(_still_unknown(ledger, [job for _, job in asked if job.key in unknown])):
+    rings = _Rings(task, ledger)
+    for job, done in workers.evaluated(_still_unknown(ledger, rings, [job for _, job in asked if job.key in unknown])):
+        rings.keep(job, done)
         ledger.add(job, done, task.space.reversed(job.wiring))
         watch(_step(unknown[job.key], done, task.objective))
 
 
-def _still_unknown(ledger: Ledger, jobs: Sequence[Job]) -> Iterator[Job]:
+@dataclass(frozen=True)
+class _Rings:
+    """Solved rings in the ledger by load pattern: bellows on equal tubes make equal waves, whichever legs they move."""
+
+    task: SearchTask
+    ledger: Ledger
+
+    def with_ring(self, job: Job) -> Job:
+        """The job with its ring's run, where another wiring of the same pattern or another length of walk has left it."""
+        return replace(job, ring=self.ledger.ring(self._pattern(job)))
+
+    def keep(self, job: Job, done: Evaluation) -> None:
+        """Keeps a ring that was solved for this job."""
+        if done.ring is not None:
+            self.ledger.keep_ring(self._pattern(job), done.ring)
+
+    def _pattern(self, job: Job) -> str:
+        return load_pattern(self.task.robot, job.wiring).key()
+
+
+def _still_unknown(ledger: Ledger, rings: _Rings, jobs: Sequence[Job]) -> Iterator[Job]:
     """The jobs that are still to be done when their turn comes: another search may share the ledger."""
     for job in jobs:
         if not ledger.there([job.key]):
-            yield job
+            yield rings.with_ring(job)
 
 
 def _step(ask: Ask, done: Evaluation, objective: str) -> Step:

@@ -15,7 +15,7 @@ from gaitlab.search.evaluate import Evaluation, Job
 from gaitlab.search.objective import OBJECTIVES, score_of
 from gaitlab.wiring.wiring import HELD, OPEN, Wiring
 
-SCHEMA = 2  # raised when an older reader would misread the tables
+SCHEMA = 3  # raised when an older reader would misread the tables
 
 SCORED = "scored"
 FAILED = "failed"
@@ -41,6 +41,7 @@ CREATE TABLE walks (
 );
 CREATE INDEX walks_by_wiring ON walks (settings, level, wiring);
 CREATE TABLE equals (wiring TEXT PRIMARY KEY, equal_to TEXT NOT NULL) WITHOUT ROWID;
+CREATE TABLE rings (pattern TEXT NOT NULL UNIQUE, run BLOB NOT NULL);
 CREATE VIEW fates AS
     SELECT wiring, level, status AS fate, CASE status WHEN 'failed' THEN outcome ELSE '' END AS detail FROM walks
     UNION ALL SELECT wiring, '', 'equal by symmetry', equal_to FROM equals;

@@ -25,7 +25,7 @@ class WalkSettings:
     periods: int | None = None
     nudge_m: float = 0.0
 
-    @cached_property
+    @property
     def level(self) -> str:
         """How far the walk goes, in words: ``settled`` or ``2 periods``.
 

@@ -34,6 +34,18 @@ def test_a_walk_repeats_to_the_bit_here_and_in_a_worker() -> None:
 
 
 @pytest.mark.slow
+def test_a_ring_from_the_ledger_gives_the_same_walk_as_one_that_is_solved() -> None:
+    """The wiring seen from the tail has the same bellows on the same tubes: one load pattern, one solve."""
+    flipped = Wiring(tuple((inlet, source) for inlet, source in zip("abcde", (4, 2, 5, 3, 1), strict=True)))
+    first = evaluate(job())
+    assert first.ring is not None
+    for wiring in (SMOOTH, flipped):
+        given, solved = evaluate(dataclasses.replace(job(wiring), ring=first.ring)), evaluate(job(wiring))
+        assert repr(given.walk) == repr(solved.walk)
+        assert given.ring is None and solved.ring == first.ring
+
+
+@pytest.mark.slow
 def test_turning_the_ring_changes_no_travel() -> None:
     """Every output number moved on by one only shifts time: settled travel within the walks' own scatter or 1 %."""
     walks = [evaluate(job(SMOOTH.turned(steps, 5), None)).walk for steps in (0, 1, 3)]

@@ -17,6 +17,7 @@ from wiring.robots import row_document
 
 from gaitlab.errors import RunFolderError
 from gaitlab.robot.reader import robot_from_document
+from gaitlab.search import ledger as ledger_module
 from gaitlab.search.evaluate import WORKER_LOST, Evaluation, Job, failed_walk
 from gaitlab.search.identity import Identity
 from gaitlab.search.ledger_file import LEDGER_FILE, created, reopened
@@ -210,3 +211,11 @@ def test_a_changed_robot_file_does_not_mix(tmp_path: Path) -> None:
     other = SearchTask.of(document, robot_from_document(document))
     with pytest.raises(RunFolderError, match="changed robot file"):
         reopened(tmp_path / LEDGER_FILE, other.identity)
+
+
+def test_rings_are_kept_once_and_up_to_a_limit(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(ledger_module, "RINGS_MAX", 2)
+    with created(tmp_path / LEDGER_FILE, TASK.identity) as ledger:
+        for pattern, run in (("p", b"one"), ("p", b"other"), ("q", b"two"), ("r", b"three")):
+            ledger.keep_ring(pattern, run)
+        assert [ledger.ring(pattern) for pattern in "pqr"] == [b"one", b"two", None]

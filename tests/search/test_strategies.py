@@ -231,4 +231,4 @@ def test_default_budget_is_an_eighth_within_bounds() -> None:
 def test_no_strategy_hears_of_the_order_of_evaluation() -> None:
     """A reading names its ask: nothing in it tells when it came."""
     assert {f.name for f in dataclasses.fields(Reading)} == {"ask", "score", "scatter", "outcome"}
-    assert {f.name for f in dataclasses.fields(Job)} == {"document_json", "wiring", "settings", "key"}
+    assert {f.name for f in dataclasses.fields(Job)} == {"document_json", "wiring", "settings", "key", "ring"}
