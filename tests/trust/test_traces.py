@@ -2,6 +2,8 @@
 
 import numpy as np
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 
 from gaitlab.errors import InputError
 from gaitlab.trust.trace_csv import BenchTraces, read_traces
@@ -113,3 +115,38 @@ def test_too_short_and_resting_are_outcomes():
     reading = read_rhythm(still)
     assert reading.outcome == "rests"
     assert dict(reading.levels_Pa) == {1: 40e3, 2: 3e3}
+
+
+CELLS = st.one_of(
+    st.floats(allow_nan=True).map(str), st.sampled_from(["", "#", "1,5", "time_s", "é", '"', "0x1", "1e400", "-0"])
+)
+NAMES = st.sampled_from(
+    ["time_s", "stage_1_kPa", "stage_2_kPa", "inlet_a_kPa", "supply_kPa", "stage_0_kPa", "inlet__kPa", ""]
+)
+
+
+@settings(max_examples=150, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@given(st.lists(NAMES, min_size=1, max_size=5), st.lists(st.lists(CELLS, min_size=1, max_size=5), max_size=40))
+def test_whatever_is_in_the_file_it_is_read_or_refused(tmp_path, names, table):
+    text = "\n".join([",".join(names), *(",".join(row) for row in table)])
+    try:
+        traces = read_traces(written(tmp_path, text), stages=3, inlets=LEGS)
+    except InputError as error:
+        assert "must be" in str(error)
+    else:
+        assert np.all(np.diff(traces.time_s) > 0)
+        assert read_rhythm(traces).outcome in ("oscillates", "rests", "too_short")
+
+
+@settings(max_examples=60, deadline=None)
+@given(st.floats(0.2, 3.0), st.floats(0.05, 0.95), st.floats(3e3, 25e3), st.floats(0.0, 400.0), st.integers(0, 1000))
+def test_any_swing_gives_its_period_back(period_s, lag, swing_Pa, noise_Pa, seed):
+    """Sines of any period, lag and swing, with noise up to a good part of the swing's guard."""
+    rng = np.random.default_rng(seed)
+    t = np.arange(0.0, 8.2 * period_s, period_s / 60)
+    waves = [30e3 + swing_Pa / 2 * np.sin(2 * np.pi * (t / period_s - 0.3 - x)) for x in (0.0, lag)]
+    noisy = [w + rng.normal(0, min(noise_Pa, 0.03 * swing_Pa), len(t)) for w in waves]
+    reading = read_rhythm(BenchTraces(t, ((1, noisy[0]), (3, noisy[1])), (), None))
+    assert reading.outcome == "oscillates"
+    assert reading.period_s == pytest.approx(period_s, rel=0.01)
+    assert abs((dict(reading.stages)[3].phase - lag + 0.5) % 1.0 - 0.5) < 0.015
