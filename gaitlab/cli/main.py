@@ -5,7 +5,6 @@ from __future__ import annotations
 import importlib
 import os
 import platform
-import sys
 from importlib import metadata
 from typing import Any
 
@@ -107,6 +106,9 @@ class LazyGroup(click.Group):
             if ctx.meta.get("debug"):
                 raise
             raise BadInput(str(error)) from error
+        except KeyboardInterrupt:
+            click.echo("interrupted", err=True)
+            raise click.exceptions.Exit(EXIT_INTERRUPTED) from None
         except BrokenPipeError:
             raise
         except Exception as error:
@@ -184,7 +186,4 @@ def main(arguments: list[str] | None = None) -> None:
     """Runs the command line and ends the process with its exit code."""
     for name in THREAD_SETTINGS:
         os.environ.setdefault(name, "1")  # before the first command imports numpy
-    try:
-        cli.main(args=arguments, prog_name="gaitlab", standalone_mode=True)
-    except KeyboardInterrupt:
-        sys.exit(EXIT_INTERRUPTED)
+    cli.main(args=arguments, prog_name="gaitlab", standalone_mode=True)

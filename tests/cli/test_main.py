@@ -68,7 +68,7 @@ def test_a_misspelt_command_is_answered_with_a_close_one() -> None:
     assert gaitlab("qqqq").err.strip().endswith("No such command 'qqqq'. See gaitlab --help.")
 
 
-def raising(error: Exception) -> click.Command:
+def raising(error: BaseException) -> click.Command:
     def run() -> None:
         raise error
 
@@ -113,3 +113,10 @@ def test_every_robot_that_ships_passes_check(path: Path) -> None:
     shown = gaitlab("check", str(path))
     assert shown.code == 0
     assert "distinct" in shown.out
+
+
+def test_ctrl_c_exits_130_without_a_traceback(monkeypatch: pytest.MonkeyPatch) -> None:
+    module = importlib.import_module("gaitlab.cli.check_command")
+    monkeypatch.setattr(module, "command", raising(KeyboardInterrupt()))
+    shown = gaitlab("check")
+    assert (shown.code, shown.out, shown.err) == (130, "", "interrupted\n")

@@ -27,6 +27,7 @@ class Search:
     folder: Path
     mark: str = field(default_factory=lambda: uuid.uuid4().hex)
     settings: dict[str, str] = field(default_factory=dict)
+    _heard: str = ""  # what earlier starts reported
 
     def __post_init__(self) -> None:
         self.folder.mkdir(parents=True, exist_ok=True)
@@ -50,6 +51,10 @@ class Search:
     def started(self, *more: str, resume: bool | None = None) -> subprocess.Popen[str]:
         """The search as a process, going on with what is there (unless told otherwise)."""
         again = self.ledger.exists() if resume is None else resume
+        self._heard += (
+            (self.folder / "heard.txt").read_text(encoding="utf-8") if (self.folder / "heard.txt").exists() else ""
+        )
+        (self.folder / "heard.txt").unlink(missing_ok=True)
         arguments = [
             "search",
             str(self.robot),
@@ -81,7 +86,8 @@ class Search:
     def heard(self) -> set[str]:
         """Wirings whose walk was reported as finished, in any of the starts."""
         path = self.folder / "heard.txt"
-        return set(path.read_text(encoding="utf-8").split("\n")) - {""} if path.exists() else set()
+        latest = path.read_text(encoding="utf-8") if path.exists() else ""
+        return set((self._heard + latest).split("\n")) - {""}
 
     def rows(self) -> dict[str, tuple[object, ...]]:
         """The ledger's walks by wiring, each wall time left out (it is the only thing that may differ)."""
@@ -118,6 +124,13 @@ class Search:
         while self.processes() and time.monotonic() < until:
             time.sleep(0.05)
         return self.processes()
+
+    def wait_for_start(self, process: subprocess.Popen[str]) -> None:
+        """Waits until Python runs the search's first line (before that, Ctrl-C meets Python and not the search)."""
+        until = time.monotonic() + LIMIT_S
+        while not (self.folder / "heard.txt").exists() and process.poll() is None:
+            assert time.monotonic() < until, "the search did not start"
+            time.sleep(0.005)
 
     def wait_for_walks(self, process: subprocess.Popen[str], number: int) -> None:
         """Waits until so many walks were reported, or the search has ended."""

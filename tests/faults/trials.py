@@ -28,7 +28,8 @@ def hurt_at_random(search: Search, chance: random.Random, sign: signal.Signals) 
     """Starts or resumes the search and hurts it after a random number of further walks, or before the first one."""
     process = search.started()
     if chance.random() < 0.25:
-        time.sleep(chance.uniform(0.0, 2.0))  # while it starts
+        search.wait_for_start(process)
+        time.sleep(chance.uniform(0.0, 2.0))  # while it loads its parts
     else:
         search.wait_for_walks(process, len(search.heard()) + chance.randrange(1, WIRINGS // 4))
         time.sleep(chance.uniform(0.0, 0.03))
