@@ -6,36 +6,51 @@ Sources are whole numbers here: outputs 1…N, atmosphere N + 1, supply N + 2; i
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+
+Ties = tuple[tuple[int, ...], ...]
+Fixed = tuple[tuple[int, int], ...]
 
 
 @dataclass(frozen=True)
 class Constraints:
-    """`ties` are groups of inlets on one source, `fixed` pairs (inlet, source) that are decided."""
+    """`ties` are groups of inlets on one source, `fixed` pairs (inlet, source) that are decided.
+
+    `excused` inlets may be on atmosphere or supply though the limits forbid it to others: those that a decision puts there.
+    """
 
     inlets: int
     stages: int
     ties: tuple[tuple[int, ...], ...] = ()
     fixed: tuple[tuple[int, int], ...] = ()
+    excused: frozenset[int] = frozenset()
+
+    @classmethod
+    def of(cls, inlets: int, stages: int, ties: Ties = (), fixed: Fixed = ()) -> Constraints:
+        """The constraints of a robot file: whatever is decided, or tied to it, is excused."""
+        bare = cls(inlets, stages, ties, fixed)
+        named = {inlet for inlet, _ in fixed}
+        return replace(bare, excused=frozenset(i for group in bare.groups() if named & set(group) for i in group))
 
     def mirrored(self, mirror: tuple[int, ...]) -> Constraints:
         """The same constraints on the mirror image: inlet i stands where `mirror[i]` stood."""
         ties = tuple(tuple(mirror[i] for i in tie) for tie in self.ties)
         fixed = tuple((mirror[i], source) for i, source in self.fixed)
-        return Constraints(self.inlets, self.stages, ties, fixed)
+        return Constraints(self.inlets, self.stages, ties, fixed, frozenset(mirror[i] for i in self.excused))
 
     def turned(self, steps: int) -> Constraints:
         """Every decided output moved on by `steps` round the ring."""
         fixed = tuple((i, turned_source(s, steps, self.stages)) for i, s in self.fixed)
-        return Constraints(self.inlets, self.stages, self.ties, fixed)
+        return replace(self, fixed=fixed)
 
     def joined(self, other: Constraints) -> Constraints:
-        """Both sets of constraints at once."""
-        return Constraints(self.inlets, self.stages, self.ties + other.ties, self.fixed + other.fixed)
+        """Both sets of constraints at once; excused is who is so in both."""
+        ties, fixed = self.ties + other.ties, self.fixed + other.fixed
+        return replace(self, ties=ties, fixed=fixed, excused=self.excused & other.excused)
 
     def tied_to_mirror(self, mirror: tuple[int, ...]) -> Constraints:
         """These constraints, and every inlet on the source of its mirror image."""
-        return Constraints(self.inlets, self.stages, self.ties + tuple(enumerate(mirror)), self.fixed)
+        return replace(self, ties=self.ties + tuple(enumerate(mirror)))
 
     def fixes_an_output(self) -> bool:
         """Whether some inlet is decided to be on an output: then the numbering cannot be turned freely."""

@@ -21,12 +21,12 @@ from gaitlab.wiring.constraints import Constraints
 
 @dataclass(frozen=True)
 class Rules:
-    """What an output may carry, and how many sources there are beside the outputs (atmosphere, supply: 0, 1 or 2)."""
+    """What an output may carry, and which sources beside the outputs are open to all (atmosphere N + 1, supply N + 2)."""
 
     stages: int
     per_output_max: int
     every_output_used: bool
-    still_sources: int
+    still: tuple[int, ...] = ()
 
 
 @dataclass
@@ -44,7 +44,7 @@ class Fillings:
     def ways(self, output: int, left: tuple[int, ...]) -> int:
         """Number of ways to place `left[k]` groups of size `sizes[k]` on the outputs from position `output` on."""
         if output == self.rules.stages:
-            return int(self.rules.still_sources ** sum(left))
+            return int(len(self.rules.still) ** sum(left))
         key = (output, left)
         if key not in self._known:
             self._known[key] = sum(ways for _, ways in self.choices(output, left))
@@ -63,7 +63,7 @@ class Fillings:
 
 def fillings(constraints: Constraints, rules: Rules) -> tuple[Fillings, tuple[int, ...]] | None:
     """The table of ways under `constraints` and the numbers of free groups by size; None for contradicting decisions."""
-    decided = constraints.decided()
+    decided = possible(constraints, rules)
     if decided is None:
         return None
     loads, free = [0] * rules.stages, []
@@ -77,10 +77,22 @@ def fillings(constraints: Constraints, rules: Rules) -> tuple[Fillings, tuple[in
     return Fillings(rules, sizes, tuple(loads)), tuple(numbers[s] for s in sizes)
 
 
+def possible(constraints: Constraints, rules: Rules) -> dict[int, int] | None:
+    """Source of every group that is decided; None for decisions that contradict each other or the rules."""
+    decided = constraints.decided()
+    if decided is None:
+        return None
+    groups = constraints.groups()
+    forbidden = (
+        groups[position] for position, source in decided.items() if source > rules.stages and source not in rules.still
+    )
+    return decided if all(constraints.excused.issuperset(group) for group in forbidden) else None
+
+
 def count(constraints: Constraints, rules: Rules) -> int:
     """Number of wirings that keep `constraints` and `rules`.
 
-    >>> count(Constraints(5, 5), Rules(5, 1, True, 0))
+    >>> count(Constraints(5, 5), Rules(5, 1, True))
     120
     """
     table = fillings(constraints, rules)
@@ -89,10 +101,10 @@ def count(constraints: Constraints, rules: Rules) -> int:
 
 def count_still(constraints: Constraints, rules: Rules) -> int:
     """Number of those wirings in which no inlet is on an output: the only ones that a turn of the ring leaves as they are."""
-    decided = constraints.decided()
+    decided = possible(constraints, rules)
     if decided is None or rules.every_output_used or constraints.fixes_an_output():
         return 0
-    return int(rules.still_sources ** (len(constraints.groups()) - len(decided)))
+    return int(len(rules.still) ** (len(constraints.groups()) - len(decided)))
 
 
 def count_distinct(constraints: Constraints, rules: Rules, *, turns: bool, mirror: tuple[int, ...] | None) -> int:
@@ -102,7 +114,7 @@ def count_distinct(constraints: Constraints, rules: Rules, *, turns: bool, mirro
     that set, the classes that meet the allowed set are those of A ∪ mA, on which the symmetries act, and
     |Fix(A ∪ mA)| = |Fix A| + |Fix mA| − |Fix(A ∩ mA)|. Stages must be odd (an even ring does not oscillate).
 
-    >>> count_distinct(Constraints(7, 7), Rules(7, 1, True, 0), turns=True, mirror=None)
+    >>> count_distinct(Constraints(7, 7), Rules(7, 1, True), turns=True, mirror=None)
     720
     """
     order = rules.stages if turns else 1

@@ -24,16 +24,15 @@ class Urn:
     left: Left
     groups: tuple[tuple[int, ...], ...]
     decided: dict[int, int]
-    still: tuple[int, ...]
     _known: dict[tuple[int, Left], Choices] = field(default_factory=dict)
 
     @classmethod
-    def of(cls, constraints: Constraints, rules: Rules, still: tuple[int, ...]) -> Urn:
+    def of(cls, constraints: Constraints, rules: Rules) -> Urn:
         """The urn of all wirings under these limits. Raises ValueError when there is none."""
         table = fillings(constraints, rules)
         if table is None or table[0].ways(0, table[1]) == 0:
             raise ValueError("no wiring keeps these limits")
-        return cls(*table, constraints.groups(), constraints.decided() or {}, still)
+        return cls(*table, constraints.groups(), constraints.decided() or {})
 
     def drawn(self, rng: np.random.Generator) -> tuple[int, ...]:
         """Source numbers of one wiring."""
@@ -48,7 +47,7 @@ class Urn:
                 for _ in range(number):
                     sources[_popped(pools[size], rng)] = output + 1
         for group in sorted(g for pool in pools.values() for g in pool):
-            sources[group] = self.still[int(rng.integers(len(self.still)))]
+            sources[group] = self.table.rules.still[int(rng.integers(len(self.table.rules.still)))]
         return self._numbers(sources)
 
     def _numbers(self, sources: dict[int, int]) -> tuple[int, ...]:

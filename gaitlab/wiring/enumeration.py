@@ -16,7 +16,6 @@ class _Listing:
     groups: tuple[tuple[int, ...], ...]
     decided: dict[int, int]
     rules: Rules
-    still: tuple[int, ...]
     first_in_place: bool
     numbers: list[int]
     loads: list[int]
@@ -40,7 +39,7 @@ class _Listing:
         stages = self.rules.stages
         last = 1 if self.first_in_place and not any(self.loads) else stages
         room = self.rules.per_output_max - len(group)
-        return [s for s in range(1, last + 1) if self.loads[s - 1] <= room] + list(self.still)
+        return [s for s in range(1, last + 1) if self.loads[s - 1] <= room] + list(self.rules.still)
 
     def _unused(self) -> int:
         return self.loads.count(0) if self.rules.every_output_used else 0
@@ -56,9 +55,7 @@ class _Listing:
             self.loads[source - 1] -= len(group)
 
 
-def representatives(
-    constraints: Constraints, rules: Rules, still: tuple[int, ...], *, first_in_place: bool
-) -> Iterator[tuple[int, ...]]:
+def representatives(constraints: Constraints, rules: Rules, *, first_in_place: bool) -> Iterator[tuple[int, ...]]:
     """Every wiring under `constraints` and `rules` as source numbers, in lexicographic order of its groups.
 
     With `first_in_place` only those whose first inlet on any output is on output 1: one of each set of turns.
@@ -66,7 +63,7 @@ def representatives(
     groups, decided = constraints.groups(), constraints.decided()
     if decided is None:
         return
-    listing = _Listing(groups, decided, rules, still, first_in_place, [0] * constraints.inlets, [0] * rules.stages)
+    listing = _Listing(groups, decided, rules, first_in_place, [0] * constraints.inlets, [0] * rules.stages)
     for position, source in decided.items():
         listing.place(groups[position], source)
     if max(listing.loads) > rules.per_output_max:

@@ -36,7 +36,7 @@ def rules_of(robot: Robot) -> Rules:
         raise InputError(
             must("ring.stages", "odd to be searched (an even ring latches)", stages, "add or drop a stage")
         )
-    return Rules(stages, limits.inlets_per_output_max, limits.every_output_used, len(still_numbers(robot)))
+    return Rules(stages, limits.inlets_per_output_max, limits.every_output_used, still_numbers(robot))
 
 
 def constraints_of(robot: Robot) -> Constraints:
@@ -45,7 +45,7 @@ def constraints_of(robot: Robot) -> Constraints:
     position = {inlet: i for i, inlet in enumerate(robot.inlets())}
     ties = tuple(tuple(position[inlet] for inlet in tie) for tie in robot.wiring.tied if tie)
     fixed = tuple((position[inlet], source_number(source, stages)) for inlet, source in robot.wiring.fixed)
-    return Constraints(len(position), stages, ties, fixed)
+    return Constraints.of(len(position), stages, ties, fixed)
 
 
 def refuse_nothing(constraints: Constraints, rules: Rules) -> None:
@@ -77,7 +77,7 @@ def _room_text(rules: Rules) -> str:
 
 def _rule_text(rules: Rules) -> str:
     used = ", each output used" if rules.every_output_used else ""
-    still = ", no inlet on open or held" if rules.still_sources == 0 else ""
+    still = ", no inlet on open or held" if not rules.still else ""
     return f"limits that leave at least one wiring ({_room_text(rules)}{used}{still})"
 
 
@@ -89,5 +89,5 @@ def _groups_text(constraints: Constraints) -> str:
 
 def _fix(rules: Rules) -> str:
     unused = ", set every_output_used = false" if rules.every_output_used else ""
-    still = ", set allow_open = true" if rules.still_sources == 0 else ""
+    still = ", set allow_open = true" if not rules.still else ""
     return "raise inlets_per_output_max" + unused + still

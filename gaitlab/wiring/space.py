@@ -21,7 +21,6 @@ from gaitlab.wiring.limits import (
     rules_of,
     source_number,
     source_of,
-    still_numbers,
 )
 from gaitlab.wiring.mirror import mirror_of
 from gaitlab.wiring.wiring import Wiring
@@ -34,14 +33,12 @@ class WiringSpace:
     """The allowed wirings of one robot and its symmetries.
 
     `turns`: the stages are equal, so that moving every output on by one only shifts time. `mirror`: position of each inlet's mirror
-    image (travel kept, drift and turn negated), None where the body has none. `still` are the numbers of atmosphere and
-    supply as far as they are allowed.
+    image (travel kept, drift and turn negated), None where the body has none.
     """
 
     inlets: tuple[str, ...]
     constraints: Constraints
     rules: Rules
-    still: Numbers
     turns: bool
     mirror: Numbers | None
 
@@ -54,7 +51,6 @@ class WiringSpace:
             inlets=robot.inlets(),
             constraints=constraints,
             rules=rules,
-            still=still_numbers(robot),
             turns=not robot.ring.overrides,
             mirror=mirror_of(robot),
         )
@@ -95,7 +91,7 @@ class WiringSpace:
             return False
         if any(numbers[i] != numbers[group[0]] for group in self._groups for i in group[1:]):
             return False
-        if any(numbers[g[0]] > self.stages and numbers[g[0]] not in self.still for g in self._free_groups):
+        if any(numbers[g[0]] > self.stages and numbers[g[0]] not in self.rules.still for g in self._free_groups):
             return False
         least = 1 if self.rules.every_output_used else 0
         return all(least <= numbers.count(s) <= self.rules.per_output_max for s in range(1, self.stages + 1))
@@ -159,7 +155,7 @@ class WiringSpace:
 
     def __iter__(self) -> Iterator[Wiring]:
         """Every distinct wiring once, by its representative, in a fixed order and without holding them all."""
-        for numbers in representatives(self.constraints, self.rules, self.still, first_in_place=self._first_in_place):
+        for numbers in representatives(self.constraints, self.rules, first_in_place=self._first_in_place):
             if self.mirror is None or self.canonical_numbers(numbers) == numbers:
                 yield self.wiring(numbers)
 
@@ -178,7 +174,7 @@ class WiringSpace:
         for one, other in combinations(self._free_groups, 2):
             yield _with_sources(numbers, ((one, numbers[other[0]]), (other, numbers[one[0]])))
         for group in self._free_groups:
-            for source in (*range(1, self.stages + 1), *self.still):
+            for source in (*range(1, self.stages + 1), *self.rules.still):
                 yield _with_sources(numbers, ((group, source),))
 
     def sampled(self, rng: np.random.Generator) -> Wiring:
@@ -187,7 +183,7 @@ class WiringSpace:
 
     @cached_property
     def _urn(self) -> Urn:
-        return Urn.of(self.constraints, self.rules, self.still)
+        return Urn.of(self.constraints, self.rules)
 
 
 def _with_sources(numbers: Numbers, changes: tuple[tuple[Numbers, int], ...]) -> Numbers:
