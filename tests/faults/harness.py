@@ -9,6 +9,7 @@ import subprocess
 import sys
 import time
 import uuid
+from collections.abc import Callable
 from dataclasses import dataclass, field
 from pathlib import Path
 
@@ -120,24 +121,28 @@ class Search:
 
     def orphans(self) -> list[int]:
         """Processes that outlive the search, after some patience."""
-        until = time.monotonic() + GONE_WITHIN_S
-        while self.processes() and time.monotonic() < until:
-            time.sleep(0.05)
+        _waited(lambda: not self.processes(), GONE_WITHIN_S)
         return self.processes()
 
     def wait_for_start(self, process: subprocess.Popen[str]) -> None:
         """Waits until Python runs the search's first line (before that, Ctrl-C meets Python and not the search)."""
-        until = time.monotonic() + LIMIT_S
-        while not (self.folder / "heard.txt").exists() and process.poll() is None:
-            assert time.monotonic() < until, "the search did not start"
-            time.sleep(0.005)
+        begun = _waited(lambda: (self.folder / "heard.txt").exists() or process.poll() is not None, LIMIT_S)
+        assert begun, "the search did not start"
 
     def wait_for_walks(self, process: subprocess.Popen[str], number: int) -> None:
         """Waits until so many walks were reported, or the search has ended."""
-        until = time.monotonic() + LIMIT_S
-        while len(self.heard()) < number and process.poll() is None:
-            assert time.monotonic() < until, "no walk was reported"
-            time.sleep(0.005)
+        reported = _waited(lambda: len(self.heard()) >= number or process.poll() is not None, LIMIT_S)
+        assert reported, "no walk was reported"
+
+
+def _waited(condition: Callable[[], bool], patience_s: float) -> bool:
+    """Whether the condition came true in time; a guard against hanging, not a measure of speed."""
+    until = time.monotonic() + patience_s
+    while not condition():
+        if time.monotonic() > until:
+            return False
+        time.sleep(0.005)
+    return True
 
 
 def _carries(entry: Path, text: str) -> bool:
