@@ -33,7 +33,7 @@ class Chance:
     high: float
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True)
 class Outcome:
     """What one build did with one wiring: travel per period [m], speed [m/s], the searched-for score (more is better), its name.
 
