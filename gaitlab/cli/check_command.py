@@ -10,6 +10,8 @@ import click
 from gaitlab.air.gas import gas_of
 from gaitlab.air.supply import supply_law
 from gaitlab.air.validity import circuit_warnings
+from gaitlab.body.checks import check_step
+from gaitlab.body.model import body_model
 from gaitlab.cli.options import json_option, robot_argument
 from gaitlab.cli.output import print_facts, print_json, warn
 from gaitlab.robot.checks import require_odd_ring
@@ -26,8 +28,8 @@ from gaitlab.wiring.space import WiringSpace
 def command(robot_path: Path, as_json: bool) -> None:
     """Read a robot file and say what it will be.
 
-    Refused (exit 2): anything that breaks a rule of the file, and a ring that cannot oscillate. Legal but unlikely
-    numbers are named warnings.
+    Refused (exit 2): anything that breaks a rule of the file, a ring that cannot oscillate, a body that cannot stand. Legal
+    but unlikely numbers are named warnings.
 
     \b
       gaitlab check robots/tray_row5.toml
@@ -59,7 +61,7 @@ def summary(file: RobotFile) -> dict[str, Any]:
         "blocks": [block.name for block in robot.body.blocks],
         "mass_g": mass_kg(robot) * 1e3,
         "wirings": {"raw": space.raw, "distinct": space.distinct},
-        "warnings": [*file.warnings, *air_warnings(robot)],
+        "warnings": [*file.warnings, *air_warnings(robot), *body_warnings(robot)],
     }
 
 
@@ -67,6 +69,13 @@ def air_warnings(robot: Robot) -> tuple[str, ...]:
     """What is doubtful about the air parts; raises InputError for a supply that cannot work at the ambient pressure."""
     gas = gas_of(robot.ambient)
     return circuit_warnings(robot.ring, gas, supply_law(robot.supply, gas).rest_Pa)
+
+
+def body_warnings(robot: Robot) -> tuple[str, ...]:
+    """What is doubtful about the body; raises InputError for one that cannot stand or a step too long for its springs."""
+    model = body_model(robot)
+    check_step(model, step_s=robot.numerics.step_s, inertia_factor=robot.numerics.inertia_factor)
+    return model.warnings
 
 
 def _print_human(facts: dict[str, Any]) -> None:

@@ -44,3 +44,14 @@ def test_a_plot_is_written_once(tmp_path: Path) -> None:
     shown = gaitlab("bellows", ROW5, "--plot", str(target))
     assert shown.code == 2 and "add --force to replace it" in shown.err
     assert gaitlab("bellows", ROW5, "--plot", str(target), "--force").code == 0
+
+
+def test_check_refuses_a_body_that_cannot_stand(tmp_path: Path) -> None:
+    """The body's own refusals and warnings reach the first command that a builder runs."""
+    text = Path(ROW5).read_text(encoding="utf-8")
+    path = tmp_path / "weak.toml"
+    path.write_text(text.replace("bend_stiffness_N_m_rad = 0.014", "bend_stiffness_N_m_rad = 0.002"), encoding="utf-8")
+    shown = gaitlab("check", str(path))
+    assert shown.code == 2 and "leg a: buckling load must be above its share of the weight" in shown.err
+    path.write_text(text.replace("bend_stiffness_N_m_rad = 0.014", "bend_stiffness_N_m_rad = 0.01"), encoding="utf-8")
+    assert "warning: buckling_margin: leg a" in gaitlab("check", str(path)).err

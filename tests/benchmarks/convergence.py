@@ -1,6 +1,6 @@
 """Does the order of wirings hang on numerical choices? Travel at half the step, half the inertia factor, nudged, in MuJoCo.
 
-    python tests/benchmarks/body_convergence.py [ROBOT.toml …] [--wirings N] [--periods N]
+    python tests/benchmarks/convergence.py [ROBOT.toml …] [--wirings N] [--periods N]
 
 For every robot (default: all in robots/) up to N wirings, evenly picked from all distinct ones, are walked in each variant
 for the same number of periods, the last of them read. Printed as a Markdown table: Spearman's rank correlation with the file's
