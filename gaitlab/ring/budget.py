@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
 
 from gaitlab.air.gas import DENSITY_ANR_KG_M3, gas_of
+from gaitlab.air.valve import valve_numbers
 from gaitlab.errors import InputError, must
 from gaitlab.ring.manifold import manifold_of
 from gaitlab.ring.pattern import LoadPattern
@@ -17,10 +18,9 @@ from gaitlab.ring.verdict import OSCILLATES
 from gaitlab.ring.waves import FloatArray, RingRun
 from gaitlab.robot.circuit import FixedVacuum, Pump, PumpTable, Supply, Syringe
 
-CLOSE = 0.02  # of the free flow: how well the smallest pump is found (chosen by us; flows are uncertain by more)
+PART, TRIES_MAX = 0.04, 12  # steps in which a pump that is just too small is made larger (chosen by us)
 ASSUMED_FREE_M3_S = 1e-3 / 6.0  # 10 L/min, where the file has no pump yet; only the start of a search
 ASSUMED_BUFFER_M3 = 50e-6
-WIDEST = 2.0**12  # span of free flows searched, from the first guess, each way
 PATIENT = Settings(cuts_max=25)  # a pump at its limit is not waited for longer
 
 
@@ -52,33 +52,39 @@ def air_budget(pattern: LoadPattern, run: RingRun) -> AirBudget:
 
 
 def smallest_free_flow(pattern: LoadPattern) -> float:
-    """Least free flow [m³/s] of a pump like the file's on which the ring oscillates; nan if none within WIDEST does.
+    """Least free flow [m³/s] of a pump like the file's that keeps every output past the level where the next valve takes hold.
 
-    A house line is answered by a pump of that dead end, mass flow linear, with ASSUMED_BUFFER_M3.
+    The pump whose curve passes through the ring's own demand just above the least vacuum that does; it is then tried, and made
+    larger by PART until the ring runs on it. A house line is answered by a pump of that dead end, mass flow linear, with
+    ASSUMED_BUFFER_M3. nan if the dead end is too low, or TRIES_MAX parts more do not help.
     """
     if isinstance(pattern.supply, Syringe):
         raise InputError(must("supply", "a pump, a pump table or a house line", "a syringe"))
+    least = (1.0 + PART) * least_vacuum(pattern)
+    if least >= dead_end(pattern):
+        return float("nan")
+    asked = float(demand(pattern, [least])[0])
+    vacuum, flow = pump_curve(pattern)
+    factor = asked / float(np.interp(least, vacuum, flow))
+    for _ in range(TRIES_MAX if np.isfinite(factor) else 0):
+        if _keeps_alive(replace(pattern, supply=scaled(pattern.supply, factor))):
+            return factor * free_flow(pattern.supply)
+        factor *= 1.0 + PART
+    return float("nan")
 
-    def alive(factor: float) -> bool:
-        run = pattern_run(replace(pattern, supply=scaled(pattern.supply, factor)), settings=PATIENT)
-        return run.outcome == OSCILLATES
 
-    low, high = _bracket(alive)
-    while high / low > 1.0 + CLOSE:
-        middle = float(np.sqrt(low * high))
-        low, high = (low, middle) if alive(middle) else (middle, high)
-    return high * free_flow(pattern.supply)
+def least_vacuum(pattern: LoadPattern) -> float:
+    """Supply vacuum [Pa] at which a shut stage just opens each next valve half way, that one's own output as deep.
+
+    v = threshold + span/2 + sealing v for the hardest valve; infinite where sealing is 1 or more.
+    """
+    valves = [valve_numbers(stage.valve) for stage in pattern.stages]
+    return max((v.threshold_Pa + 0.5 * v.opening_span_Pa) / max(1.0 - v.sealing, 1e-9) for v in valves)
 
 
-def _bracket(alive: Callable[[float], bool]) -> tuple[float, float]:
-    """Two factors a factor of two apart, the lower dead, the upper alive; nan where there are none."""
-    factor = 1.0
-    up = not alive(factor)
-    while 1.0 / WIDEST < factor < WIDEST:
-        factor = factor * 2.0 if up else factor / 2.0
-        if alive(factor) is up:
-            return (factor / 2.0, factor) if up else (factor, factor * 2.0)
-    return float("nan"), float("nan")
+def _keeps_alive(pattern: LoadPattern) -> bool:
+    run = pattern_run(pattern, settings=PATIENT)
+    return run.outcome == OSCILLATES and dict(run.details)["high_margin_Pa"] >= 0.0
 
 
 def free_flow(supply: Supply) -> float:

@@ -119,7 +119,6 @@ def test_inverter_keys_and_levels(tmp_path: Path) -> None:
     assert picture.read_bytes().startswith(PNG)
 
 
-@pytest.mark.slow
 def test_supply_of_a_pump(tmp_path: Path) -> None:
     """Working point, the least pump below the file's, and the picture."""
     picture = tmp_path / "pump.png"

@@ -146,17 +146,17 @@ def _manifold(circuit: Circuit, start: FloatArray) -> list[str]:
 
 
 def _bellows(circuit: Circuit, j: int, start: FloatArray) -> list[str]:
-    """Gas content as a charge (mg), pressure as the root of p (r − s (p_atm − p)) = E."""
+    """dp/dt = flow over d(p V)/dp = r − s p_atm + 2 s p, the volume falling by s a kPa of vacuum; a tube of p_a² − p_b² = a m."""
     net, law, gas = circuit.network, circuit.bellows[j], circuit.gas
     k, ambient = int(net.fed_by[j]), gas.pressure_Pa / KPA
-    per_kPa = -float(law.volume(1e3)[1]) / gas.RT * MG * KPA * KPA  # mg per kPa², V falling by s a kPa of vacuum
-    rest = law.rest_m3 / gas.RT * MG * KPA
-    linear = rest - per_kPa * ambient
-    held = start[2 * net.stages + j] / gas.RT * MG
+    per_kPa = -float(law.volume(1e3)[1]) / gas.RT * MG * KPA * KPA  # mg per kPa²
+    linear = law.rest_m3 / gas.RT * MG * KPA - per_kPa * ambient
+    pressure = float(net.chambers.pressure(start[2 * net.stages : -2])[0][j]) / KPA
+    flow = f"(v(p{k})*v(p{k})-v(b{j})*v(b{j}))*{MG * KPA**2 / laminar_Pa2_s_kg(circuit)[j]}"
     return [
-        f"cq{j} q{j} 0 1 ic={held}",
-        f"bb{j} b{j} 0 v=(-{linear}+sqrt({linear**2}+{4 * per_kPa}*v(q{j})))/{2 * per_kPa}",
-        f"bt{j} p{k} q{j} i=(v(p{k})*v(p{k})-v(b{j})*v(b{j}))*{MG * KPA**2 / laminar_Pa2_s_kg(circuit)[j]}",
+        f"cb{j} b{j} 0 1 ic={pressure}",
+        f"bt{j} p{k} 0 i={flow}",
+        f"bu{j} 0 b{j} i={flow}/({linear}+{2 * per_kPa}*v(b{j}))",
     ]
 
 
