@@ -9,7 +9,7 @@ import click
 
 from gaitlab.cli.files import write_new
 from gaitlab.cli.options import Number, force_option, json_option, robot_argument, wiring_option
-from gaitlab.cli.output import print_facts, print_failure, print_json, print_table, warn
+from gaitlab.cli.output import print_facts, print_failure, print_json, print_table
 from gaitlab.cli.ring_facts import STAGE_HEADERS, ring_facts, stage_rows, wiring_or_even
 from gaitlab.errors import InputError, must
 from gaitlab.ring.verdict import OSCILLATES
@@ -165,11 +165,16 @@ def _print_human(run: RingRun, facts: dict[str, Any]) -> None:
             (name.removesuffix("_kPa").replace("_", " "), f"{value:.3g}{_unit(name)}")
             for name, value in facts["margins"].items()
         ]
+    if "starts" in facts:
+        rows.append(("other starts", _starts_text(facts["starts"])))
     print_facts(rows)
     print_table(STAGE_HEADERS, stage_rows(run))
-    for start in facts.get("starts", ()):
-        if start["outcome"] != OSCILLATES:
-            warn(f"started from {start['start']} it {start['outcome']} (harmonic {start['harmonic']})")
+
+
+def _starts_text(starts: list[dict[str, Any]]) -> str:
+    """How many starts end in the fundamental, and what the others do."""
+    odd = [f"{start['start']}: {start['outcome']}" for start in starts if start["outcome"] != OSCILLATES]
+    return "; ".join([f"{len(starts) - len(odd)} of {len(starts)} end in the same rhythm", *odd])
 
 
 def _unit(name: str) -> str:

@@ -46,9 +46,9 @@ def pump_picture(picture: PumpPicture, *, title: str) -> Figure:
         axes.annotate(
             f"{flow * L_MIN:.2f} L/min at {vacuum / KPA:.1f} kPa",
             (vacuum / KPA, flow * L_MIN),
-            xytext=(0, -16),
+            xytext=(-12, -18),
             textcoords="offset points",
-            ha="center",
+            ha="right",
         )
         axes.set_xlabel("gauge vacuum at the manifold, mean of a period (kPa)")
         axes.set_ylabel("free-air flow (L/min ANR)")
