@@ -7,24 +7,22 @@ softly stops them. Every number is of the whole bellows; the body model splits i
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from gaitlab.body import bellows_geometry as drawing
+from gaitlab.body import bellows_numbers as numbers
 from gaitlab.errors import InputError, must
-from gaitlab.robot.parts import Bellows, BellowsGeometry
+from gaitlab.robot.parts import Bellows
 
 FloatArray = NDArray[np.float64]
-Drawing = Callable[[BellowsGeometry], float]
 
 # Full vacuum takes a bellows at most this fraction of the solid deflection past its limit (chosen by us: convolutions
 # touch one after the other, and a harder stop would need a shorter step).
 STOP_WIDTH = 0.25
-# No solid limit given and no drawing to tell it: this many times the measured free deflection (chosen by us).
-STOP_BEYOND_MEASURED = 1.5
 FULL_VACUUM_PA = 101_325.0
 
 
@@ -131,174 +129,79 @@ def bellows_law(bellows: Bellows) -> BellowsLaw:
     A measured free deflection wins over the drawing; the drawing fills what was not measured. Raises InputError where
     neither says a number that the motion hangs on (the axial stiffness never has a default).
     """
-    law = _measured(bellows) if _bench(bellows) is not None else _drawn(bellows)
-    _check_volume(law, bellows)
-    return law
-
-
-def _bench(bellows: Bellows) -> object:
-    return bellows.measured_bend if bellows.action == "bend" else bellows.measured_stroke
-
-
-def _measured(bellows: Bellows) -> BellowsLaw:
-    bend, stroke = bellows.measured_bend, bellows.measured_stroke
-    if bellows.action == "bend" and bend is not None:
-        free, vacuum = bend.free_bend_rad, bend.at_vacuum_Pa
-        bending, axial = _measured_bend_stiffness(bellows), _axial(bellows)
-        pull = bending * free
-    elif stroke is not None:
-        free, vacuum = stroke.free_stroke_m, stroke.at_vacuum_Pa
-        bending, axial = _bending(bellows), _measured_axial(bellows)
-        pull = axial * free
-    solid = _solid(bellows, free)
-    warnings = () if _solid_known(bellows) else (_no_solid_text(bellows),)
-    return _law(bellows, "measured", pull / vacuum, (bending, axial), solid, free, warnings)
-
-
-def _drawn(bellows: Bellows) -> BellowsLaw:
-    key = "measured_bend" if bellows.action == "bend" else "measured_stroke"
-    if bellows.geometry is None:
-        raise InputError(must(f"bellows.{bellows.name}", f"given {key} or geometry", "neither"))
-    shape, gain, warnings = bellows.geometry, drawing.effective_area(bellows.geometry), []
-    if bellows.action == "bend":
-        if shape.eccentricity_m <= 0:
-            raise InputError(_no_lever_text(bellows))
-        gain *= shape.eccentricity_m
-        if bellows.axial_stiffness_N_m is None:
-            warnings.append(_spine_text(bellows))
-    solid = _solid(bellows, None)
-    return _law(bellows, "geometry", gain, (_bending(bellows), _axial(bellows)), solid, solid, tuple(warnings))
-
-
-def _law(
-    bellows: Bellows,
-    source: str,
-    gain: float,
-    stiffness: tuple[float, float],
-    solid: float,
-    swept_at: float,
-    warnings: tuple[str, ...],
-) -> BellowsLaw:
-    return BellowsLaw(
+    bending, axial = numbers.bend_stiffness(bellows), numbers.axial_stiffness(bellows)
+    bench = _bench(bellows)
+    if bench is None:
+        gain, free = _drawn_gain(bellows), None
+    else:
+        free, vacuum_Pa = bench
+        gain = (bending if bellows.action == "bend" else axial) * free / vacuum_Pa
+    solid = numbers.solid_limit(bellows, free)
+    law = BellowsLaw(
         name=bellows.name,
         action=bellows.action,
-        source=source,
+        source="geometry" if bench is None else "measured",
         length_m=bellows.length_m,
         gain=gain,
-        bend_stiffness=stiffness[0],
-        axial_stiffness=stiffness[1],
+        bend_stiffness=bending,
+        axial_stiffness=axial,
         solid=solid,
         rest_m3=bellows.rest_volume_m3,
         swept_m3=bellows.swept_volume_m3,
-        swept_at=swept_at,
-        warnings=warnings,
+        swept_at=solid if free is None else free,
     )
+    _check_volume(law)
+    return replace(law, warnings=tuple(_doubts(bellows, law)))
 
 
-def _measured_bend_stiffness(bellows: Bellows) -> float:
-    """Whole bending stiffness from one of: itself, tip stiffness (k L²/3), blocked tip force (2 F L/(3 θ)), drawing."""
-    bend = bellows.measured_bend
-    assert bend is not None
-    routes = {
-        "bend_stiffness_N_m_rad": bellows.bend_stiffness_N_m_rad,
-        "measured_bend.bend_stiffness_N_m_rad": bend.bend_stiffness_N_m_rad,
-        "measured_bend.tip_stiffness_N_mm": _scaled(bend.tip_stiffness_N_m, bellows.length_m**2 / 3.0),
-        "measured_bend.blocked_force_N": _scaled(
-            bend.blocked_force_N, 2.0 * bellows.length_m / (3.0 * bend.free_bend_rad)
-        ),
-    }
-    return _one_of(bellows, routes, drawing.bend_rate)
-
-
-def _measured_axial(bellows: Bellows) -> float:
-    """Whole axial stiffness of a contracting bellows from one of: itself, blocked force over free stroke, drawing."""
+def _bench(bellows: Bellows) -> tuple[float, float] | None:
+    """Measured free deflection and the vacuum [Pa] it was measured at; None without a bench."""
+    if bellows.action == "bend":
+        bend = bellows.measured_bend
+        return None if bend is None else (bend.free_bend_rad, bend.at_vacuum_Pa)
     stroke = bellows.measured_stroke
-    assert stroke is not None
-    routes = {
-        "axial_stiffness_N_m": bellows.axial_stiffness_N_m,
-        "measured_stroke.blocked_force_N": _scaled(stroke.blocked_force_N, 1.0 / stroke.free_stroke_m),
-    }
-    return _one_of(bellows, routes, drawing.axial_rate)
+    return None if stroke is None else (stroke.free_stroke_m, stroke.at_vacuum_Pa)
 
 
-def _bending(bellows: Bellows) -> float:
-    return _one_of(bellows, {"bend_stiffness_N_m_rad": bellows.bend_stiffness_N_m_rad}, drawing.bend_rate)
-
-
-def _axial(bellows: Bellows) -> float:
-    return _one_of(bellows, {"axial_stiffness_N_m": bellows.axial_stiffness_N_m}, drawing.axial_rate)
-
-
-def _scaled(value: float | None, factor: float) -> float | None:
-    return None if value is None else value * factor
-
-
-def _one_of(bellows: Bellows, routes: dict[str, float | None], from_drawing: Drawing) -> float:
-    given = {key: value for key, value in routes.items() if value is not None}
-    if len(given) > 1:
-        rule = "given one of " + ", ".join(routes)
-        raise InputError(must(f"bellows.{bellows.name}", rule, " and ".join(given), "keep the one you trust most"))
-    if given:
-        return next(iter(given.values()))
+def _drawn_gain(bellows: Bellows) -> float:
+    """Pull per vacuum of a drawn bellows: A_e [N/Pa], or A_e e [N m/Pa] about the stiff spine of a bending one."""
     if bellows.geometry is None:
-        rule = "given one of " + ", ".join(routes) + ", or a geometry"
-        raise InputError(must(f"bellows.{bellows.name}", rule, "none", "measure it: it decides how the robot travels"))
-    return float(from_drawing(bellows.geometry))
+        key = "measured_bend" if bellows.action == "bend" else "measured_stroke"
+        raise InputError(must(f"bellows.{bellows.name}", f"given {key} or geometry", "neither"))
+    area, lever = drawing.effective_area(bellows.geometry), bellows.geometry.eccentricity_m
+    if bellows.action == "contract":
+        return area
+    if lever <= 0:
+        fix = "give the distance from the stiff side to the axis"
+        name = f"bellows.{bellows.name}.geometry.eccentricity_mm"
+        raise InputError(must(name, "above 0 mm for a bending bellows", lever, fix))
+    return area * lever
 
 
-def _solid_given(bellows: Bellows) -> float | None:
-    return bellows.solid_bend_rad if bellows.action == "bend" else bellows.solid_stroke_m
-
-
-def _solid_known(bellows: Bellows) -> bool:
-    return _solid_given(bellows) is not None or bellows.geometry is not None
-
-
-def _solid(bellows: Bellows, free: float | None) -> float:
-    """Deflection where the convolutions touch: as given, from the drawing, or beyond the measured one."""
-    given = _solid_given(bellows)
-    if given is None and bellows.geometry is not None:
-        limit = drawing.solid_bend if bellows.action == "bend" else drawing.solid_stroke
-        given = limit(bellows.geometry, bellows.length_m)
-    if given is None:
-        assert free is not None
-        given = STOP_BEYOND_MEASURED * free
-    if free is not None and given < free:
-        key = "solid_bend" if bellows.action == "bend" else "solid_stroke"
-        rule = f"at least the measured free deflection ({free:.4g} in SI units)"
-        raise InputError(
-            must(f"bellows.{bellows.name}.{key}", rule, f"{given:.4g}", "measure both on the same bellows")
-        )
-    if bellows.action == "contract" and given >= bellows.length_m:
-        rule = f"below the length ({bellows.length_m * 1e3:g} mm)"
-        raise InputError(must(f"bellows.{bellows.name}.solid_stroke", rule, f"{given * 1e3:g} mm"))
-    return given
-
-
-def _check_volume(law: BellowsLaw, bellows: Bellows) -> None:
+def _check_volume(law: BellowsLaw) -> None:
     least = float(law.volume(FULL_VACUUM_PA)[0])
     if least <= 0:
         rule = f"below the rest volume ({law.rest_m3 * 1e6:g} mL) at full vacuum"
         got = f"{(law.rest_m3 - least) * 1e6:.3g} mL swept"
-        raise InputError(
-            must(f"bellows.{bellows.name}.swept_mL", rule, got, "swept_mL belongs to the bench deflection")
+        fix = "swept_mL belongs to the bench deflection"
+        raise InputError(must(f"bellows.{law.name}.swept_mL", rule, got, fix))
+
+
+def _doubts(bellows: Bellows, law: BellowsLaw) -> Iterator[str]:
+    if numbers.solid_is_guessed(bellows):
+        yield (
+            f"no_solid_limit: bellows {law.name} states none; {numbers.STOP_BEYOND_MEASURED:g} times the measured free "
+            "deflection is used"
         )
-
-
-def _no_solid_text(bellows: Bellows) -> str:
-    return (
-        f"no_solid_limit: bellows {bellows.name} states none; {STOP_BEYOND_MEASURED:g} times the measured free "
-        "deflection is used"
-    )
-
-
-def _no_lever_text(bellows: Bellows) -> str:
-    fix = "give the distance from the stiff side to the axis"
-    return must(f"bellows.{bellows.name}.geometry.eccentricity_mm", "above 0 mm for a bending bellows", 0.0, fix)
-
-
-def _spine_text(bellows: Bellows) -> str:
-    return (
-        f"axial_from_drawing: the axial stiffness of bellows {bellows.name} is that of the convolutions alone; a stiff "
-        "spine adds to it, and it decides the sign of the travel: measure it"
-    )
+    if law.action == "bend" and bellows.axial_stiffness_N_m is None:
+        yield (
+            f"axial_from_drawing: the axial stiffness of bellows {law.name} is that of the convolutions alone; a stiff "
+            "spine adds to it, and it decides the sign of the travel: measure it"
+        )
+    # Air does the work p dV, the bellows takes up pull · d(deflection): the swept volume is at least gain · deflection.
+    least = law.gain * law.swept_at
+    if law.swept_m3 < 0.99 * least:
+        yield (
+            f"swept_too_small: bellows {law.name} would do more work than the air it gives up; its stiffness and bend or "
+            f"stroke ask for at least {least * 1e6:.3g} mL"
+        )

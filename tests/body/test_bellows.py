@@ -24,6 +24,11 @@ def drawn(action: str, geometry: BellowsGeometry = RUBBER) -> Bellows:
     return Bellows("drawn", action, 0.032, 0.006, 4, 4e-6, 1.5e-6, geometry=geometry)
 
 
+def unmeasured() -> Bellows:
+    """A bending bellows of which both stiffnesses are known, but not how far it bends."""
+    return replace(bending(), measured_bend=None, bend_stiffness_N_m_rad=0.02)
+
+
 @pytest.mark.parametrize("shore, youngs_MPa", [(20.0, 0.73), (30.0, 1.14), (50.0, 2.46), (70.0, 5.54)])
 def test_gent_1958_hardness_to_modulus(shore: float, youngs_MPa: float) -> None:
     """Tabulated values of Gent's relation (Wikipedia, Shore durometer: S = 30 gives 1.1 MPa, 50 gives 2.5, 70 gives 5.5)."""
@@ -122,7 +127,8 @@ def test_measurement_beats_the_drawing_and_the_drawing_fills_the_gaps() -> None:
 @pytest.mark.parametrize(
     ("bellows", "words"),
     [
-        (replace(bending(), measured_bend=None), "bellows.bend must be given measured_bend or geometry"),
+        (unmeasured(), "bellows.bend must be given measured_bend or geometry"),
+        (replace(bending(), measured_bend=None), "bellows.bend must be given one of bend_stiffness_N_m_rad, or a geom"),
         (replace(bending(), axial_stiffness_N_m=None), "axial_stiffness_N_m, or a geometry"),
         (replace(bending(), bend_stiffness_N_m_rad=0.01), "bellows.bend must be given one of"),
         (replace(bending(), solid_bend_rad=0.5), "at least the measured free deflection"),
@@ -142,4 +148,16 @@ def test_a_law_that_cannot_be_is_refused(bellows: Bellows, words: str) -> None:
 def test_doubtful_laws_say_so() -> None:
     assert "no_solid_limit" in bellows_law(replace(bending(), solid_bend_rad=None)).warnings[0]
     assert "axial_from_drawing" in bellows_law(drawn("bend")).warnings[0]
+    assert "swept_too_small" in bellows_law(replace(bending(), swept_volume_m3=2e-7)).warnings[0]
     assert bellows_law(bending()).warnings == ()
+
+
+def test_a_guessed_limit_of_a_contracting_bellows_stays_within_its_length() -> None:
+    """Half way from the measured stroke to the whole length, where one and a half strokes would be too much."""
+    long = replace(contracting(stroke_m=0.024), solid_stroke_m=None, axial_stiffness_N_m=60.0)
+    assert bellows_law(replace(long, swept_volume_m3=1e-6)).solid == pytest.approx(0.028)
+
+
+def test_a_measured_bend_beats_a_drawing_that_says_it_cannot_be() -> None:
+    far = replace(drawn("bend"), measured_bend=MeasuredBend(1.2, 50e3, bend_stiffness_N_m_rad=0.02))
+    assert bellows_law(far).solid == pytest.approx(1.2)
