@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import subprocess
+import sys
 from dataclasses import replace
 
 import numpy as np
@@ -117,3 +119,14 @@ def test_a_flat_body_walks_straight_in_bullet() -> None:
     assert abs(way[0]) > 5e-3
     assert abs(way[1]) < 0.01 * abs(way[0])
     assert abs(2.0 * (after[1][2] - before[1][2])) < 2e-3
+
+
+def test_importing_bullet_leaves_nothing_on_stderr_and_stderr_as_it_was() -> None:
+    """A fresh process: the library prints its build time from C when it is imported."""
+    code = (
+        "import sys; from gaitlab.body.engines import quiet_import\n"
+        "with quiet_import('pybullet'):\n    import pybullet\n"
+        "print('after', file=sys.stderr)"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert (done.stdout, done.stderr) == ("", "after\n")
