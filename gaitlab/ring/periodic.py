@@ -38,7 +38,7 @@ class Settings:
     loose: float = 5e-3
     tight: float = 2e-4
     near: float = 1e-2
-    closed: float = 1e-4
+    closed: float = 2e-4
     cuts_max: int = 40
 
 

@@ -14,13 +14,22 @@ from gaitlab.ring.pattern import LoadPattern, Placement, placed_pattern
 from gaitlab.ring.periodic import Settings, Settled, nudged, settled
 from gaitlab.ring.reading import oscillating_run, resting_run
 from gaitlab.ring.stroke import StrokeRun, stroke_run
-from gaitlab.ring.verdict import REMEDIES, SHORT_STROKE, rest_outcome, run_outcome, travelling_edges
+from gaitlab.ring.verdict import (
+    BEATEN,
+    REMEDIES,
+    SHORT_STROKE,
+    beaten_stage,
+    rest_outcome,
+    run_outcome,
+    travelling_edges,
+)
 from gaitlab.ring.waves import FloatArray, RingRun, Waves
 from gaitlab.robot.circuit import Syringe
 from gaitlab.robot.records import Robot
 from gaitlab.wiring.wiring import HELD, OPEN, Source, Wiring
 
 START_NUDGE = 1e-2  # full swings: how unequal the outputs are at the start; real stages differ by more
+BEATEN_STAGE = "beaten_stage"  # among the details: the stage, from 1, whose valve does not beat its resistor
 CYCLES_LEAST = 3  # periods that a stroke must hold for its middle one to be called an oscillation (chosen by us)
 
 
@@ -61,11 +70,20 @@ def run_from(circuit: Circuit, start: FloatArray, *, settings: Settings = Settin
     if followed.cycle is None:
         outcome, remedy = rest_outcome(circuit, followed, settings)
         run = resting_run(circuit, followed, outcome=outcome, remedy=remedy)
-        unsteady = followed.kind == "wandering"
-        return replace(run, harmonic=travelling_edges(circuit, followed.end)) if unsteady else run
+        return replace(run, harmonic=_edges(circuit, followed), details=_blame(circuit, followed, remedy))
     run = oscillating_run(circuit, followed, followed.cycle)
     outcome, remedy = run_outcome(circuit, run)
     return replace(run, outcome=outcome, remedy=remedy, details=margins(circuit.valves, run))
+
+
+def _edges(circuit: Circuit, followed: Settled) -> int:
+    return travelling_edges(circuit, followed.end) if followed.kind == "wandering" else 0
+
+
+def _blame(circuit: Circuit, followed: Settled, remedy: str) -> tuple[tuple[str, float], ...]:
+    """The stage that a remedy speaks of, counted from 1."""
+    stage = beaten_stage(circuit, followed) if remedy == BEATEN else None
+    return () if stage is None else ((BEATEN_STAGE, stage + 1.0),)
 
 
 def stroke_record(circuit: Circuit, stroke: StrokeRun) -> RingRun:
@@ -105,7 +123,13 @@ def placed(run: RingRun, placement: Placement, robot: Robot, wiring: Wiring) -> 
         output_vacuum_Pa=np.roll(output, turn, axis=0),
         supply_vacuum_Pa=supply,
         waves=_inlet_waves(run, bellows, placement, robot, wiring),
+        details=tuple((name, _counted(name, value, turn, stages)) for name, value in run.details),
     )
+
+
+def _counted(name: str, value: float, turn: int, stages: int) -> float:
+    """A detail as the robot counts: stage numbers are turned, everything else is left."""
+    return (value - 1.0 + turn) % stages + 1.0 if name == BEATEN_STAGE else value
 
 
 def _inlet_waves(run: RingRun, bellows: FloatArray, placement: Placement, robot: Robot, wiring: Wiring) -> Waves:

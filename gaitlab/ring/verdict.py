@@ -17,6 +17,10 @@ OSCILLATES, HIGHER_HARMONIC = "oscillates", "higher_harmonic"
 LATCHES, SETTLES, TOO_WEAK, STARVES, WANDERS = "latches", "settles", "too_weak", "starves", "wanders"
 SHORT_STROKE = "short_stroke"
 
+BEATEN = (
+    "a stage's open valve does not beat its resistor: its low level keeps the next valve open; give that stage "
+    "(margins.beaten_stage) a larger resistor or a wider valve"
+)
 REMEDIES = {
     OSCILLATES: "",
     HIGHER_HARMONIC: "the ring carries more than one travelling edge; vent all outputs and start again with one output "
@@ -57,7 +61,20 @@ def rest_outcome(circuit: Circuit, run: Settled, settings: Settings) -> tuple[st
     ring on a house line of that vacuum runs; else `settles`.
     """
     name = _unsteady_name(circuit, run) if run.kind == "wandering" else _rest_name(circuit, settings)
+    if name == SETTLES and beaten_stage(circuit, run) is not None:
+        return name, BEATEN
     return name, REMEDIES[name]
+
+
+def beaten_stage(circuit: Circuit, run: Settled) -> int | None:
+    """The first stage (0…N−1) whose open valve leaves the next valve open too, so that it never passes a change on; or None."""
+    supply = circuit.gas.pressure_Pa - float(run.end[-2] / run.end[-1])
+    valves = circuit.valves
+    for stage, after in enumerate(valves[1:] + valves[:1]):
+        low = curve_of(circuit, stage, supply).low_Pa
+        if low >= after.threshold_Pa + 0.5 * after.opening_span_Pa - after.hysteresis_Pa:
+            return stage
+    return None
 
 
 def _unsteady_name(circuit: Circuit, run: Settled) -> str:

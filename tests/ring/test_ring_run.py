@@ -11,7 +11,7 @@ from gaitlab.ring.circuit import circuit_of
 from gaitlab.ring.periodic import nudged
 from gaitlab.ring.solve import ring_run, run_from
 from gaitlab.ring.waves import RingRun
-from gaitlab.robot.circuit import FixedVacuum, StageOverride
+from gaitlab.robot.circuit import FixedVacuum, SquareDuct, StageOverride
 from gaitlab.robot.records import Robot
 from gaitlab.wiring.wiring import Wiring, wiring_from_text
 from tests.ring.robots import in_order, tray, unloaded, with_ring, with_supply, with_valve
@@ -161,6 +161,16 @@ def test_too_little_gain_settles() -> None:
     run = ring_run(robot, in_order(robot))
     assert run.outcome == "settles"
     assert np.ptp(run.peak_vacuum_Pa) < 2e3
+
+
+@pytest.mark.parametrize("stage", [2, 5])
+def test_a_stage_that_never_lets_go_is_named(stage: int) -> None:
+    """One valve as built five times too narrow: the ring settles, and the stage is named as the robot counts it."""
+    narrow = replace(tray().ring.valve, open=SquareDuct(0.2e-3, 6e-3))
+    robot = with_ring(tray(), overrides=(StageOverride(stage, valve=narrow),))
+    run = ring_run(robot, in_order(robot))
+    assert run.outcome == "settles" and "beaten_stage" in run.remedy
+    assert dict(run.details)["beaten_stage"] == stage
 
 
 def test_too_weak_a_supply() -> None:
