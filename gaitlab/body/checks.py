@@ -162,5 +162,11 @@ def explicit_number(model: BodyModel, *, step_s: float, inertia_factor: float) -
     mass = free_joint_mass(model, inertia_factor)
     damping = damping_parts(model)[1]
     stiffness = np.diag([joint.stiffest(model.vacuum_max_Pa) for joint in model.joints])
-    fastest = eigh(2.0 * step_s * damping + step_s**2 * stiffness, mass, eigvals_only=True)
+    try:
+        fastest = eigh(2.0 * step_s * damping + step_s**2 * stiffness, mass, eigvals_only=True)
+    except (np.linalg.LinAlgError, ValueError) as error:
+        rule = "of one order, so that the joints' motion can be worked out"
+        raise InputError(
+            must("masses and sizes of the body's parts", rule, str(error), "check the units in the keys")
+        ) from error
     return float(fastest[-1])

@@ -6,6 +6,7 @@ import dataclasses
 import io
 import json
 import zipfile
+import zlib
 from pathlib import Path
 from typing import Any
 
@@ -55,7 +56,7 @@ def read_trace(path: Path) -> Trace:
         raise RunFolderError(
             must("trace", "an existing .npz file", Path(path).name, "run walk --save first")
         ) from error
-    except (OSError, ValueError, KeyError, zipfile.BadZipFile, EOFError) as error:
+    except (OSError, ValueError, KeyError, EOFError, RuntimeError, zipfile.BadZipFile, zlib.error) as error:
         raise RunFolderError(f"trace {Path(path).name} is damaged or no trace: {error}") from error
     return _trace(about, arrays, Path(path).name)
 

@@ -139,7 +139,7 @@ def read_run(folder: str | Path) -> SavedRun:
     data = _run_json(path)
     try:
         return _saved_run(path, data)
-    except (InputError, KeyError, TypeError, AttributeError) as error:
+    except (InputError, LookupError, TypeError, AttributeError, ValueError, ArithmeticError) as error:
         raise RunFolderError(
             f"{path / RUN_FILE} is incomplete or damaged ({error}); usual fix: finish it with `gaitlab search … --resume`"
         ) from error
@@ -153,7 +153,7 @@ def _run_json(folder: Path) -> dict[str, Any]:
         raise RunFolderError(_no_run_text(folder))
     try:
         data = json.loads(file.read_text(encoding="utf-8"))
-    except (UnicodeDecodeError, json.JSONDecodeError) as error:
+    except (ValueError, RecursionError) as error:  # no UTF-8, no JSON, or nested without end
         raise RunFolderError(
             f"{file} was cut off or is no JSON ({error}); usual fix: finish it with `gaitlab search … --resume`"
         ) from error

@@ -13,6 +13,7 @@ from gaitlab.robot.tree import check_tree
 # A body engine handles some 120 joints, three for each inlet; no walker published has as many. Chosen by us.
 INLETS_MAX = 40
 BLOCKS_MAX = 64
+BLOCK_MIN_M = 1e-4  # thinner than foil; chosen by us
 
 
 def check_robot(robot: Robot) -> None:
@@ -41,6 +42,13 @@ def require_odd_ring(robot: Robot) -> None:
 def _check_counts(robot: Robot) -> None:
     if not robot.body.blocks:
         raise fail(("body", "block"), "hold at least one block")
+    for index, block in enumerate(robot.body.blocks):
+        if min(block.size_m) < BLOCK_MIN_M:
+            raise fail(
+                ("body", "block", index, "size_mm"),
+                f"be at least {BLOCK_MIN_M * 1e3:g} mm each way",
+                min(block.size_m) * 1e3,
+            )
     if len(robot.body.blocks) > BLOCKS_MAX:
         raise fail(("body", "block"), f"hold at most {BLOCKS_MAX} blocks", len(robot.body.blocks))
     for place, chain in chain_places(robot):

@@ -13,6 +13,7 @@ from gaitlab.robot.hints import split_unit
 MAGNITUDE_MIN = 1e-9
 MAGNITUDE_MAX = 1e9
 ITEMS_MAX = 10_000  # entries of one array; chosen by us
+REACH_MAX_MM = 10_000  # no part of a crawler lies or measures more than 10 m from where it is fixed; chosen by us
 TEXT_MAX = 1_000  # characters of one text; chosen by us
 
 
@@ -51,7 +52,15 @@ def numbers_of(key: Key, value: Any, place: Place) -> tuple[float, ...]:
     items = list_of(value, place, "numbers")
     if key.length is not None and len(items) != key.length:
         raise fail(place, f"have {key.length} numbers", value, "a vector is [x, y, z]: x forward, y left, z up")
+    if key.length is not None and key.name.endswith("_mm"):
+        _check_reach(items, place)
     return tuple(number_of(key, item, (*place, i)) for i, item in enumerate(items))
+
+
+def _check_reach(items: list[Any], place: Place) -> None:
+    for i, item in enumerate(items):
+        if isinstance(item, int | float) and abs(item) > REACH_MAX_MM:
+            raise fail((*place, i), f"lie within {REACH_MAX_MM} mm", item, "vectors are in mm")
 
 
 def texts_of(key: Key, value: Any, place: Place) -> tuple[str, ...]:

@@ -224,3 +224,16 @@ def test_a_huge_file_is_refused_before_it_is_read(tmp_path: Path) -> None:
     with path.open("wb") as file:
         file.truncate(10**11)  # a hole: takes no room on disk
     assert f"file must be at most {SIZE_MAX} bytes, got 100000000000" in message_of(path)
+
+
+@pytest.mark.parametrize(
+    ("place", "value", "message"),
+    [
+        (("body", "block", 0, "size_mm"), [160, 0, 12], "size_mm must be at least 0.1 mm each way, got 0.0"),
+        (("body", "block", 0, "size_mm"), [160, 30, -12], "size_mm must be at least 0.1 mm each way, got -12.0"),
+        ((*LEG, "at_mm"), [0, 0, 1e9], "at_mm item 3 must lie within 10000 mm, got 1000000000.0"),
+    ],
+)
+def test_sizes_and_places_of_a_body_on_a_bench(place: tuple[Any, ...], value: Any, message: str) -> None:
+    with pytest.raises(RobotFileError, match=message):
+        robot_from_document(row5_with(place, value))
