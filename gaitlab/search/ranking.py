@@ -92,6 +92,7 @@ class Ranking:
             connection.execute("DROP TABLE IF EXISTS temp.places")
             connection.execute(PLACES.format(score=f"score_{objective}"), (settings.text,))
             connection.execute("CREATE INDEX temp.places_by_wiring ON places (wiring)")
+            connection.execute("CREATE INDEX temp.places_by_rank ON places (rank)")
 
     def __iter__(self) -> Iterator[Ranked]:
         """Every place, best first."""
