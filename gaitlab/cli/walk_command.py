@@ -159,12 +159,18 @@ def _save(folder: Path, facts: dict[str, Any], trace: Trace | None, *, force: bo
 def _print(walk: Walk, facts: dict[str, Any], *, as_json: bool) -> None:
     for text in walk.warnings:
         warn(text)
-    if walk.outcome != WALKED:
-        more = {key: value for key, value in facts.items() if key != "outcome"}
-        print_failure(walk.outcome, walk.remedy, as_json=as_json, **more)
+    if walk.outcome != WALKED and as_json:
+        print_failure(walk.outcome, walk.remedy, as_json=True, **{k: v for k, v in facts.items() if k != "outcome"})
     if as_json:
         print_json(facts)
         return
+    if walk.duty_factor:  # a walk that never settled was measured all the same
+        _print_people(facts)
+    if walk.outcome != WALKED:
+        print_failure(walk.outcome, walk.remedy, as_json=False)
+
+
+def _print_people(facts: dict[str, Any]) -> None:
     print_facts([("wiring", " ".join(f"{i}={s}" for i, s in facts["wiring"].items())), *walk_rows(facts)])
     click.echo()
     print_table(["foot", "duty", "stance (phases)"], footfall_rows(facts))

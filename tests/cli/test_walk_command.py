@@ -97,3 +97,10 @@ def test_wrong_values_are_refused_by_name(words: tuple[str, ...], message: str) 
     assert done.code == 2
     assert message in done.err
     assert "Traceback" not in done.err
+
+
+def test_people_see_what_a_walk_that_never_settled_did(tmp_path: Path) -> None:
+    robot = changed(tmp_path, "[ring]\n", "[numerics]\nperiods_max = 2\n\n[ring]\n")
+    done = gaitlab("walk", robot, "--wiring", WIRING, "--sequence", "alternate", "--period-s", "0.4")
+    assert done.code == 1
+    assert "mm per period" in done.out and "remedy: " in done.out
