@@ -76,6 +76,8 @@ def command(
     run = _ideal(robot, wiring, sequence, period_s, vacuum_kPa) if sequence is not None else _solved(robot, wiring)
     _check_ideal(sequence, period_s, vacuum_kPa, starts)
     facts = ring_facts(run) | {"wiring": wiring.as_dict()}
+    if run.outcome != IDEAL:
+        facts["margins"] |= _gains(robot, wiring, run)
     if starts:
         facts["starts"] = _other_starts(robot, wiring)
     if run.outcome not in (OSCILLATES, IDEAL):
@@ -114,6 +116,16 @@ def _phases(sequence: str) -> str | list[float]:
         return [float(word) for word in sequence.split(",")]
     except ValueError:
         return sequence
+
+
+def _gains(robot: Robot, wiring: Wiring, run: RingRun) -> dict[str, float]:
+    """The weakest stage's steepest gain at the run's supply vacuum, and what this number of stages needs."""
+    from gaitlab.ring.circuit import circuit_of
+    from gaitlab.ring.inverter import gain_needed
+    from gaitlab.ring.verdict import weakest_gain
+
+    gain = weakest_gain(circuit_of(robot, wiring), max(run.supply_mean_Pa, 1.0))
+    return {"gain": gain, "gain_needed": gain_needed(robot.ring.stages)}
 
 
 def _other_starts(robot: Robot, wiring: Wiring) -> list[dict[str, Any]]:

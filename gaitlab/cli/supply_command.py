@@ -26,7 +26,8 @@ if TYPE_CHECKING:
     from gaitlab.robot.records import Robot
     from gaitlab.wiring.wiring import Wiring
 
-DEMAND_PARTS = (0.6, 0.75, 0.9)  # of the dead end, besides the working point: where the ring's demand is drawn
+DEMAND_POINTS = 4  # vacuums, besides the working point, at which the ring's demand is drawn
+MOST_OF_DEAD_END = 0.95
 
 
 @click.command("supply")
@@ -128,9 +129,10 @@ def _picture(robot: Robot, pattern: LoadPattern, run: RingRun, budget: AirBudget
 def _pump_figure(robot: Robot, pattern: LoadPattern, run: RingRun, budget: AirBudget) -> Figure:
     """The file's pump (none for a house line), the smallest one, and what the ring asks for at several vacuums."""
     from gaitlab.report.supply_plots import PumpPicture, pump_picture
-    from gaitlab.ring.budget import dead_end, demand, free_flow, pump_curve
+    from gaitlab.ring.budget import dead_end, demand, free_flow, least_vacuum, pump_curve
 
-    asked = np.array(DEMAND_PARTS) * dead_end(pattern)
+    deepest = MOST_OF_DEAD_END * dead_end(pattern)
+    asked = np.linspace(min(1.04 * least_vacuum(pattern), deepest), deepest, DEMAND_POINTS)
     vacuum, flow = np.append(asked, budget.working_Pa), np.append(demand(pattern, asked), budget.flow_kg_s)
     order = np.argsort(vacuum)
     own = pump_curve(pattern) if isinstance(robot.supply, Pump | PumpTable) else None

@@ -42,14 +42,8 @@ def pump_picture(picture: PumpPicture, *, title: str) -> Figure:
         _draw(axes, picture.smallest, name, color=MUTED, lw=1.4, ls=(0, (1, 1.5)))
         _draw(axes, picture.ring, "what the ring draws", color=ORANGE, lw=1.6, ls="--", marker="s", ms=4)
         vacuum, flow = picture.working
-        axes.plot(vacuum / KPA, flow * L_MIN, "o", ms=9, mfc="white", mec=INK, mew=1.8, label="working point")
-        axes.annotate(
-            f"{flow * L_MIN:.2f} L/min at {vacuum / KPA:.1f} kPa",
-            (vacuum / KPA, flow * L_MIN),
-            xytext=(-12, -18),
-            textcoords="offset points",
-            ha="right",
-        )
+        name = f"working point: {flow * L_MIN:.2f} L/min at {vacuum / KPA:.1f} kPa"
+        axes.plot(vacuum / KPA, flow * L_MIN, "o", ms=9, mfc="white", mec=INK, mew=1.8, label=name)
         axes.set_xlabel("gauge vacuum at the manifold, mean of a period (kPa)")
         axes.set_ylabel("free-air flow (L/min ANR)")
         axes.set_xlim(left=0.0)

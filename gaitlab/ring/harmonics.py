@@ -16,10 +16,6 @@ from gaitlab.ring.periodic import Settings, nudged
 from gaitlab.ring.solve import run_from
 from gaitlab.ring.waves import FloatArray, RingRun
 
-PRIME_SAFE = (
-    7  # odd primes up to this were followed from every edge count and always fell back (tests/ring/test_harmonics.py)
-)
-
 
 @dataclass(frozen=True)
 class Start:

@@ -92,7 +92,10 @@ def pumped(circuit: Circuit, states: FloatArray) -> FloatArray:
 
 
 def start_up(cuts_s: tuple[float, ...], period_s: float) -> float:
-    """Time [s] of the first cut after which every period is within STARTED of the final one."""
+    """Time [s] of the first cut after which every period is within STARTED of the final one.
+
+    An estimate: how long outputs that begin alike take to fall into order hangs on how unequal they are.
+    """
     off = np.abs(np.diff(cuts_s) / period_s - 1.0) > STARTED
     return float(cuts_s[int(np.flatnonzero(off)[-1]) + 1 if off.any() else 0])
 

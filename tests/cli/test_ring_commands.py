@@ -49,6 +49,8 @@ def test_ring_prints_every_key_and_its_picture(tmp_path: Path) -> None:
         len(facts[key]) == 5 for key in ("phase", "duty", "peak_vacuum_kPa", "least_vacuum_kPa", "rise_s", "fall_s")
     )
     assert facts["supply_vacuum_kPa"]["min"] <= facts["supply_vacuum_kPa"]["mean"]
+    assert facts["margins"]["gain"] > facts["margins"]["gain_needed"] == pytest.approx(1.236068, abs=1e-6)
+    assert facts["margins"]["high_margin_kPa"] > 5.0 and facts["margins"]["low_margin_kPa"] > 5.0
     assert picture.read_bytes().startswith(PNG)
     assert gaitlab("ring", str(TRAY), "--plot", str(picture)).code == 2
 
