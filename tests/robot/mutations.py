@@ -105,6 +105,21 @@ def wrong_number(document: Document, pick: Pick) -> None:
         _set(document, place, pick(NUMBERS))
 
 
+def mild_numbers(document: Document, pick: Pick) -> None:
+    """A few numbers somewhat off: most of these are still robots, and strange ones."""
+    for _ in range(pick([1, 3, 10])):
+        place = _some_place(
+            document, pick, lambda value: isinstance(value, float | int) and not isinstance(value, bool)
+        )
+        if place:
+            value = _get(document, place)
+            _set(
+                document,
+                place,
+                value * pick([1, 2]) if isinstance(value, int) else value * pick([0.03, 0.3, 0.8, 1.25, 3.0, 30.0]),
+            )
+
+
 def scaled_number(document: Document, pick: Pick) -> None:
     """A number in another unit, or with the wrong sign."""
     place = _some_place(document, pick, _is_number)
@@ -216,8 +231,8 @@ def other_numbers_of_stages(document: Document, pick: Pick) -> None:
 
 
 DOCUMENT_WAYS = [
-    take_away, wrong_number, scaled_number, wrong_type, wrong_text, renamed_key, extra_key, doubled_item, swapped_values,
-    deep_nesting, cyclic_tree, odd_wiring, odd_tolerance, other_numbers_of_stages,
+    mild_numbers, mild_numbers, mild_numbers, take_away, wrong_number, scaled_number, wrong_type, wrong_text, renamed_key,
+    extra_key, doubled_item, swapped_values, deep_nesting, cyclic_tree, odd_wiring, odd_tolerance, other_numbers_of_stages,
 ]  # fmt: skip
 
 
