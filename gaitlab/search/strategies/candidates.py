@@ -9,7 +9,7 @@ import numpy as np
 from gaitlab.wiring.space import WiringSpace
 from gaitlab.wiring.wiring import Wiring
 
-LISTED_MAX = 20_000  # wirings that are listed once and kept; a larger space is sampled; chosen by us
+LISTED_MAX = 5_000  # wirings that are listed once and all looked at; a larger space is sampled; chosen by us for speed
 ROUND_BEST = 12  # best wirings whose neighbours are looked at; chosen by us
 AT_RANDOM = 200  # drawn beside them, so that no part of the space is shut out; chosen by us
 DRAWS_PER_WIRING = 50  # tries for one unseen wiring before the space counts as used up; chosen by us

@@ -39,7 +39,7 @@ def default_budget(space: WiringSpace) -> int:
 class ProcessSearch:
     """Upper-confidence search: walk next where mean + daring · standard deviation is largest, in batches.
 
-    Within a batch a chosen wiring counts as read with its expected value (constant-liar rule), so that the batch spreads out.
+    Within a batch a chosen wiring counts as read with its expected value (the kriging-believer rule), so that the batch spreads out.
     A failed walk counts as the worst reading so far.
     """
 
