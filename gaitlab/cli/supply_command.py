@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -111,11 +112,15 @@ def _print_human(facts: dict[str, Any]) -> None:
         rows += [
             ("periods per pull", facts["periods_per_stroke"]),
             ("dies after", f"{facts['dies_at_s']:.4g} s at {facts['dies_at_vacuum_kPa']:.4g} kPa"),
-            ("travel per pull", f"{facts['travel_mm_per_stroke']:.4g} mm"),
+            ("travel per pull", _travel_words(facts["travel_mm_per_stroke"])),
         ]
     else:
         rows.append(("smallest pump", f"{facts['smallest_free_flow_L_min']:.3g} L/min free flow, same dead end"))
     print_facts(rows)
+
+
+def _travel_words(travel_mm: float) -> str:
+    return "not walked: give --wiring" if math.isnan(travel_mm) else f"{travel_mm:.3g} mm (good to 20–30 %)"
 
 
 def _picture(robot: Robot, pattern: LoadPattern, run: RingRun, budget: AirBudget) -> bytes:
