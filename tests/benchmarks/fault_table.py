@@ -139,8 +139,8 @@ def damage(bench: Bench) -> str:
 
 # What is tried: in words, the trial, faults in one trial, trials when quick, trials in the long run.
 EXPERIMENTS: list[tuple[str, Trial, int, int, int]] = [
-    ("robot file spoiled", spoiled_file, 1, 500, 20_000),
-    ("command line that makes no sense", wrong_option, 1, 60, 1_500),
+    ("robot file spoiled", spoiled_file, 1, 500, 10_000),
+    ("command line that makes no sense", wrong_option, 1, 60, 1_000),
     ("search killed (kill -9) at a random moment", kills, 5, 1, 20),
     ("Ctrl-C at a random moment", interrupts, 5, 1, 6),
     ("search ended by the system (SIGTERM)", shutdown, 1, 1, 10),
