@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import importlib
+import os
 import subprocess
 import sys
 from pathlib import Path
@@ -120,3 +121,19 @@ def test_ctrl_c_exits_130_without_a_traceback(monkeypatch: pytest.MonkeyPatch) -
     monkeypatch.setattr(module, "command", raising(KeyboardInterrupt()))
     shown = gaitlab("check")
     assert (shown.code, shown.out, shown.err) == (130, "", "interrupted\n")
+
+
+def test_shell_completion_offers_commands_and_options() -> None:
+    def offered(words: str, position: int) -> list[str]:
+        environment = {
+            **os.environ,
+            "_GAITLAB_COMPLETE": "bash_complete",
+            "COMP_WORDS": words,
+            "COMP_CWORD": str(position),
+        }
+        run = [sys.executable, "-m", "gaitlab"]
+        done = subprocess.run(run, capture_output=True, text=True, cwd=COMMAND_FOLDER.parents[1], env=environment)
+        return [line.split(",")[1] for line in done.stdout.splitlines()]
+
+    assert offered("gaitlab che", 1) == ["check"]
+    assert {"--legs", "--json", "--debug"} <= set(offered("gaitlab new --", 2))
