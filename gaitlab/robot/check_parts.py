@@ -6,6 +6,7 @@ from itertools import pairwise
 
 from gaitlab.robot.circuit import BenchRestrictor, FlowPart, Pump, PumpTable, Syringe, Valve, ValveGeometry
 from gaitlab.robot.faults import Place, fail
+from gaitlab.robot.names import chain_places
 from gaitlab.robot.parts import Bellows, BellowsGeometry
 from gaitlab.robot.records import Robot
 
@@ -87,6 +88,15 @@ def check_bellows(robot: Robot) -> None:
         if bellows.swept_volume_m3 > bellows.rest_volume_m3:
             raise fail((*place, "swept_mL"), "be at most rest_mL", bellows.swept_volume_m3 * 1e6)
         _check_motion(bellows, place)
+
+
+def check_opposed(robot: Robot) -> None:
+    """Only a bending bellows has another side to bend to. Raises FaultError."""
+    for place, chain in chain_places(robot):
+        for index, unit in enumerate(chain.units):
+            if unit.opposed_inlet is not None and robot.bellows_named(unit.bellows).action != "bend":
+                where = (*place, "unit", index, "opposed_inlet")
+                raise fail(where, 'be left out where the bellows has action = "contract"', unit.opposed_inlet)
 
 
 def _check_motion(bellows: Bellows, place: Place) -> None:

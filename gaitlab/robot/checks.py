@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from gaitlab.errors import InputError, must
-from gaitlab.robot.check_parts import check_bellows, check_supply, check_valves
+from gaitlab.robot.check_parts import check_bellows, check_opposed, check_supply, check_valves
 from gaitlab.robot.check_wiring import check_wiring
 from gaitlab.robot.faults import fail
 from gaitlab.robot.names import chain_places, check_names
@@ -24,6 +24,7 @@ def check_robot(robot: Robot) -> None:
     check_supply(robot)
     check_valves(robot)
     check_bellows(robot)
+    check_opposed(robot)
     _check_overrides(robot)
     check_wiring(robot)
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
@@ -13,7 +13,7 @@ from gaitlab.robot.faults import FaultError
 from gaitlab.robot.lines import line_of
 from gaitlab.robot.paths import check_tolerances
 from gaitlab.robot.records import Robot
-from gaitlab.robot.shorthand import expanded
+from gaitlab.robot.shorthand import as_written, expanded
 from gaitlab.robot.source import document_from_file
 from gaitlab.robot.suspicions import suspicions
 
@@ -56,7 +56,8 @@ def robot_from_document(document: dict[str, Any], *, source: str = "robot") -> R
         check_robot(robot)
         check_tolerances(robot, document)
     except FaultError as error:
-        raise FaultError(error.fault, source) from None
+        written = replace(error.fault, place=as_written(document, error.fault.place))
+        raise FaultError(written, source) from None
     return robot
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from gaitlab.robot.faults import fail
+from gaitlab.robot.faults import Place, fail
 from gaitlab.robot.fields import Key
 from gaitlab.robot.values import number_of
 
@@ -29,6 +29,20 @@ def expanded(document: dict[str, Any]) -> dict[str, Any]:
             for key, value in body.items()
         }
     return full
+
+
+def as_written(document: dict[str, Any], place: Place) -> Place:
+    """Where the file itself says what stands at a place of the expanded document.
+
+    >>> as_written({"body": {"leg": [{"name": "a", "bellows": "x"}]}}, ("body", "leg", 0, "unit", 0, "inlet"))
+    ('body', 'leg', 0, 'name')
+    """
+    if len(place) < 6 or place[0] != "body" or place[3] != "unit":
+        return place
+    _, kind, index, _, _, *rest = place
+    if "unit" in document["body"][kind][index]:
+        return place
+    return ("body", kind, index, "name" if rest == ["inlet"] else "bellows")
 
 
 def standard_pressure_kPa(altitude_m: float) -> float:

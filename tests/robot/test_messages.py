@@ -237,3 +237,31 @@ def test_a_huge_file_is_refused_before_it_is_read(tmp_path: Path) -> None:
 def test_sizes_and_places_of_a_body_on_a_bench(place: tuple[Any, ...], value: Any, message: str) -> None:
     with pytest.raises(RobotFileError, match=message):
         robot_from_document(row5_with(place, value))
+
+
+def test_a_short_way_of_writing_is_told_as_it_was_written(tmp_path: Path) -> None:
+    lines = ROW5.split("\n")
+    at = [i for i, x in enumerate(lines) if x.startswith("bellows =")][2]
+    lines[at] = 'bellows = "lag"'
+    path = written(tmp_path / "r.toml", "\n".join(lines).encode())
+    assert f"line {at + 1}, table [body.leg] number 3: bellows must name a bellows of this file" in message_of(path)
+    document = row5_with((*LEG, "name"), "block d")
+    with pytest.raises(RobotFileError, match=r"table \[body.leg\] number 2: name must be a name"):
+        robot_from_document(document)
+
+
+def test_only_a_bending_bellows_has_another_side() -> None:
+    pulling = {
+        **row5()["bellows"]["leg"], "action": "contract", "bend_stiffness_N_m_rad": 0.05,
+        "measured_stroke": {"free_stroke_mm": 5, "at_vacuum_kPa": 50},
+    }  # fmt: skip
+    del pulling["measured_bend"], pulling["solid_bend_deg"]
+    document = row5_with(("bellows", "pull"), pulling)
+    leg = document["body"]["leg"][0]
+    del leg["bellows"]
+    leg["unit"] = [{"bellows": "pull", "inlet": "a", "opposed_inlet": "a2"}]
+    document["wiring"] = {"inlets_per_output_max": 2}
+    with pytest.raises(
+        RobotFileError, match='opposed_inlet must be left out where the bellows has action = "contract"'
+    ):
+        robot_from_document(document)
