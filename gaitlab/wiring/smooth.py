@@ -8,6 +8,7 @@ from itertools import pairwise, product
 
 from gaitlab.robot.parts import Leg
 from gaitlab.robot.records import Robot
+from gaitlab.wiring.places import block_origins
 from gaitlab.wiring.space import Numbers, WiringSpace
 from gaitlab.wiring.wiring import Wiring
 
@@ -35,19 +36,6 @@ def ideal_phase(output: int, stages: int) -> float:
 def output_at(step: int, stages: int) -> int:
     """The output whose evacuation edge lies `step` Nths of a period after output 1's."""
     return 2 * step % stages + 1
-
-
-def block_origins(robot: Robot) -> dict[str, float]:
-    """Forward position [m] of each block's centre with the first root block at 0, spines lying straight."""
-    rears = {spine.rear for spine in robot.body.spines}
-    origins = {block.name: 0.0 for block in robot.body.blocks if block.name not in rears}
-    waiting = list(robot.body.spines)
-    while any(spine.front in origins for spine in waiting):
-        spine = next(s for s in waiting if s.front in origins)
-        length = sum(robot.bellows_named(unit.bellows).length_m for unit in spine.units)
-        origins[spine.rear] = origins[spine.front] + spine.front_at_m[0] - length - spine.rear_at_m[0]
-        waiting.remove(spine)
-    return origins
 
 
 def rows(robot: Robot) -> tuple[tuple[str, ...], ...]:

@@ -23,6 +23,7 @@ from gaitlab.wiring.limits import (
     source_of,
 )
 from gaitlab.wiring.mirror import mirror_of
+from gaitlab.wiring.places import Place, inlet_places
 from gaitlab.wiring.wiring import Wiring
 
 Numbers = tuple[int, ...]  # source of each inlet in order: outputs 1…N, atmosphere N + 1, supply N + 2
@@ -33,7 +34,7 @@ class WiringSpace:
     """The allowed wirings of one robot and its symmetries.
 
     `turns`: the stages are equal, so that moving every output on by one only shifts time. `mirror`: position of each inlet's mirror
-    image (travel kept, drift and turn negated), None where the body has none.
+    image (travel kept, drift and turn negated), None where the body has none. `places`: where each inlet is, forward and left [m].
     """
 
     inlets: tuple[str, ...]
@@ -41,6 +42,7 @@ class WiringSpace:
     rules: Rules
     turns: bool
     mirror: Numbers | None
+    places: tuple[Place, ...]
 
     @classmethod
     def of(cls, robot: Robot) -> WiringSpace:
@@ -53,6 +55,7 @@ class WiringSpace:
             rules=rules,
             turns=not robot.ring.overrides,
             mirror=mirror_of(robot),
+            places=inlet_places(robot),
         )
 
     @property

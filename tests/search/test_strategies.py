@@ -18,8 +18,8 @@ from gaitlab.search.strategies.ask_tell import Ask, Reading, Strategy
 from gaitlab.search.strategies.candidates import Candidates
 from gaitlab.search.strategies.closing import BEST, Closing
 from gaitlab.search.strategies.exhaustive import Exhaustive
-from gaitlab.search.strategies.gaussian import posterior
-from gaitlab.search.strategies.kernel import SHARPNESS, WiringKernel
+from gaitlab.search.strategies.gaussian import likely_scale, posterior
+from gaitlab.search.strategies.kernel import SHARPNESS, WiringKernel, pair_weights
 from gaitlab.search.strategies.process_search import ProcessSearch, default_budget
 from gaitlab.search.strategies.race import Race
 from gaitlab.search.strategies.random_draws import RandomDraws
@@ -45,14 +45,15 @@ def landscape(task: SearchTask) -> Score:
     return lambda ask: smooth_landscape(job_of(task, ask))
 
 
-def alike(one: Wiring, other: Wiring, stages: int) -> float:
-    """The kernel as it is defined, pair of legs by pair of legs."""
-    total, number = 0.0, 0
+def alike(one: Wiring, other: Wiring, space: WiringSpace) -> float:
+    """The kernel as it is defined, pair of legs by pair of legs, for legs at different places."""
+    total, weights = 0.0, 0.0
     for i, j in combinations(range(len(one.pairs)), 2):
         sources = [one.pairs[i][1], one.pairs[j][1], other.pairs[i][1], other.pairs[j][1]]
-        total += pair_term(sources, stages)
-        number += 1
-    return float(np.exp(SHARPNESS * (total / number - 1.0)))
+        weight = 1.0 / float(np.hypot(*np.subtract(space.places[i], space.places[j])))
+        total += weight * pair_term(sources, space.stages)
+        weights += weight
+    return float(np.exp(SHARPNESS * (total / weights - 1.0)))
 
 
 def pair_term(sources: list[int | str], stages: int) -> float:
@@ -82,7 +83,7 @@ def test_kernel_is_its_definition(name: str) -> None:
     wirings = list(space)[:40]
     kernel = WiringKernel(space)
     values = kernel.between(kernel.features(wirings[:7]), kernel.features(wirings))
-    wanted = [[alike(a, b, space.stages) for b in wirings] for a in wirings[:7]]
+    wanted = [[alike(a, b, space) for b in wirings] for a in wirings[:7]]
     np.testing.assert_allclose(values, wanted, atol=1e-12)
 
 
@@ -92,11 +93,19 @@ def test_kernel_sees_no_difference_between_equals_and_is_positive(name: str) -> 
     kernel = WiringKernel(space)
     for wiring in list(space)[::5]:
         images = kernel.features(space.orbit(wiring))
+        assert images.shape[0] == (1 if space.mirror is None else 2)
         np.testing.assert_allclose(kernel.between(images, images), 1.0, atol=1e-12)
     features = kernel.features(list(space)[:60])
     values = kernel.between(features, features)
     np.testing.assert_allclose(values, values.T, atol=1e-12)
     assert np.linalg.eigvalsh(values).min() > -1e-10
+
+
+def test_pairs_weigh_the_inverse_of_their_distance() -> None:
+    """Three legs 1 and 2 apart: shares 6, 2 and 3 of 11; two inlets at one place count as near as the nearest others."""
+    np.testing.assert_allclose(pair_weights(np.array([[0.0, 0.0], [1.0, 0.0], [3.0, 0.0]])) * 11, [6, 2, 3])
+    np.testing.assert_allclose(pair_weights(np.array([[0.0, 0.0], [0.0, 0.0], [0.0, 2.0]])) * 3, [1, 1, 1])
+    np.testing.assert_allclose(pair_weights(np.zeros((3, 2))) * 3, [1, 1, 1])
 
 
 def test_process_is_the_textbook_formula() -> None:
@@ -105,9 +114,11 @@ def test_process_is_the_textbook_formula() -> None:
     places = rng.normal(size=(9, 2))
     whole = np.exp(-np.sum((places[:, None] - places[None]) ** 2, axis=-1))
     readings = rng.normal(size=6) + 3.0
-    mean, deviation = posterior(whole[:6, :6], readings, noise=0.01).predicted(whole[6:, :6])
-    spread, middle = np.std(readings), np.mean(readings)
+    scale = likely_scale(whole[:6, :6], readings, noise=0.01)
+    mean, deviation = posterior(whole[:6, :6], readings, scale, noise=0.01).predicted(whole[6:, :6])
     inverse = np.linalg.inv(whole[:6, :6] + 0.01 * np.eye(6))
+    middle = np.mean(readings)
+    spread = np.sqrt((readings - middle) @ inverse @ (readings - middle) / 6)
     wanted = middle + whole[6:, :6] @ inverse @ (readings - middle)
     variance = spread**2 * (1.0 - np.diag(whole[6:, :6] @ inverse @ whole[:6, 6:]))
     np.testing.assert_allclose(mean, wanted, rtol=1e-9)
@@ -115,7 +126,8 @@ def test_process_is_the_textbook_formula() -> None:
 
 
 def test_process_of_equal_readings_expects_the_same_everywhere() -> None:
-    mean, _ = posterior(np.eye(3), np.full(3, 2.5)).predicted(np.zeros((2, 3)))
+    readings = np.full(3, 2.5)
+    mean, _ = posterior(np.eye(3), readings, likely_scale(np.eye(3), readings)).predicted(np.zeros((2, 3)))
     np.testing.assert_array_equal(mean, 2.5)
 
 

@@ -6,6 +6,7 @@ import pytest
 from wiring.robots import document, pairs, row
 
 from gaitlab.robot.reader import robot_from_document
+from gaitlab.wiring.places import inlet_places
 from gaitlab.wiring.smooth import SmoothWaves, ideal_phase, output_at, rows, time_step
 from gaitlab.wiring.space import WiringSpace
 from gaitlab.wiring.wiring import Wiring
@@ -55,3 +56,11 @@ def test_a_spine_is_a_row_of_its_own_bellows() -> None:
     robot = robot_from_document(document("worm5"))
     (line,) = rows(robot)
     assert line == robot.inlets()
+
+
+def test_inlets_are_where_their_legs_and_bellows_are() -> None:
+    assert inlet_places(row(5, 5)) == ((0.068, 0.0), (0.034, 0.0), (0.0, 0.0), (-0.034, 0.0), (-0.068, 0.0))
+    assert inlet_places(pairs(1, 3, every_output_used=False)) == ((0.042, 0.02), (0.042, -0.02))
+    worm = inlet_places(robot_from_document(document("worm5")))
+    forward = [place[0] for place in worm]
+    assert len(worm) == 5 and forward == sorted(forward, reverse=True)

@@ -15,29 +15,42 @@ NOISE = 1e-3
 
 
 @dataclass(frozen=True)
-class Posterior:
-    """The process after some readings: standardised readings, their kernel's factor and weights."""
+class Scale:
+    """The process before any reading: its mean, and its standard deviation [unit of the readings]."""
 
     mean: float
-    spread: float
+    deviation: float
+
+
+def likely_scale(kernel: FloatArray, readings: FloatArray, noise: float = NOISE) -> Scale:
+    """The mean of the readings, and the deviation that makes them most likely under the kernel: σ² = yᵀ K⁻¹ y / n."""
+    mean = float(np.mean(readings))
+    factor = cholesky(kernel + noise * np.eye(len(readings)), lower=True, check_finite=False)
+    white = solve_triangular(factor, readings - mean, lower=True, check_finite=False)
+    deviation = float(np.sqrt(np.mean(white**2)))
+    return Scale(mean, deviation if deviation > 0.0 else 1.0)
+
+
+@dataclass(frozen=True)
+class Posterior:
+    """The process after some readings: its scale, their kernel's factor and weights."""
+
+    scale: Scale
     factor: FloatArray
     weights: FloatArray
 
     def predicted(self, kernel: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Mean and standard deviation [unit of the readings] of wirings by their kernel rows (wirings, readings).
 
-        μ = m + k K⁻¹ y, σ² = s² (1 − k K⁻¹ kᵀ) with K = kernel of the readings + noise; see Rasmussen & Williams, Gaussian
+        μ = m + k K⁻¹ (y − m), σ² = s² (1 − k K⁻¹ kᵀ) with K = kernel of the readings + noise; see Rasmussen & Williams, Gaussian
         Processes for Machine Learning (2006), equations 2.25 and 2.26.
         """
         through = solve_triangular(self.factor, kernel.T, lower=True, check_finite=False)
         variance = np.maximum(0.0, 1.0 - np.sum(through**2, axis=0))
-        return self.mean + self.spread * (kernel @ self.weights), self.spread * np.sqrt(variance)
+        return self.scale.mean + kernel @ self.weights, self.scale.deviation * np.sqrt(variance)
 
 
-def posterior(kernel: FloatArray, readings: FloatArray, noise: float = NOISE) -> Posterior:
+def posterior(kernel: FloatArray, readings: FloatArray, scale: Scale, noise: float = NOISE) -> Posterior:
     """The process that has seen `readings` (n,) at wirings whose kernel with each other is `kernel` (n, n)."""
-    mean, spread = float(np.mean(readings)), float(np.std(readings))
-    spread = spread if spread > 0.0 else 1.0
     factor = cholesky(kernel + noise * np.eye(len(readings)), lower=True, check_finite=False)
-    weights = cho_solve((factor, True), (readings - mean) / spread, check_finite=False)
-    return Posterior(mean, spread, factor, weights)
+    return Posterior(scale, factor, cho_solve((factor, True), readings - scale.mean, check_finite=False))

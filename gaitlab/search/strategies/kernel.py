@@ -1,12 +1,15 @@
 """How alike two wirings are: the kernel of a Gaussian process over wirings.
 
-k(w, w′) = exp(−4 (1 − s)), s the mean over pairs of legs of cos(Δ − Δ′), Δ being the phase difference of the pair. It sees phase
-differences only, so that turning the ring changes nothing; with a mirror-symmetric body k is averaged over both images of a wiring.
+k(w, w′) = exp(−a (1 − s)), s the weighted mean over pairs of inlets of cos(Δ − Δ′), Δ being the phase difference of the pair. It sees
+phase differences only, so that turning the ring changes nothing. A pair weighs the inverse of its distance on the body, because
+legs near each other share the load and get into each other's way. With a mirror-symmetric body k is averaged over both
+images of a wiring.
 """
 
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import combinations
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,9 +19,11 @@ from gaitlab.wiring.space import WiringSpace
 from gaitlab.wiring.wiring import Wiring
 
 FloatArray = NDArray[np.float64]
-ComplexArray = NDArray[np.complex128]
+IntArray = NDArray[np.intp]
 
-SHARPNESS = 4.0  # of exp(−4 (1 − s)); found on one seven-leg body by trial, kept for all others
+# a of exp(−a (1 − s)): the likelihood of a seven-leg body's walks is highest near 1, the search finds most at 1.5.
+SHARPNESS = 1.5
+KINDS = 3  # on an output, on atmosphere, on the supply
 
 
 class WiringKernel:
@@ -26,52 +31,59 @@ class WiringKernel:
 
     def __init__(self, space: WiringSpace, sharpness: float = SHARPNESS) -> None:
         self._space, self._sharpness = space, sharpness
+        self._first, self._second = pairs_of(len(space.inlets))
+        self._share = np.sqrt(pair_weights(np.array(space.places)))
 
-    def features(self, wirings: Sequence[Wiring]) -> ComplexArray:
-        """One row per wiring: e^{2πi·phase} of each inlet on an output (0 for others), then 1 where it is open, then where held.
+    def features(self, wirings: Sequence[Wiring]) -> FloatArray:
+        """Rows whose products are s; shape (images, wirings, values), one image or, with a mirror, two."""
+        numbers = np.array([self._space.numbers(w) for w in wirings], dtype=int).reshape(len(wirings), -1)
+        if self._space.mirror is None:
+            return self._rows(numbers)[None]
+        return np.stack([self._rows(numbers), self._rows(numbers[:, np.asarray(self._space.mirror)])])
 
-        Shape (wirings, 3 · inlets).
+    def between(self, one: FloatArray, other: FloatArray) -> FloatArray:
+        """Kernel values, shape (wirings of one, wirings of other); 1 between a wiring and itself, its turns and its mirror image."""
+        values = sum(self._values(one[0] @ image.T) for image in other)
+        return np.asarray(values / np.sqrt(np.outer(self._with_images(one), self._with_images(other))))
+
+    def _with_images(self, features: FloatArray) -> FloatArray:
+        """Similarity of each wiring to itself and its images together."""
+        return np.asarray(sum(self._values(np.sum(features[0] * image, axis=-1)) for image in features))
+
+    def _values(self, alike: FloatArray) -> FloatArray:
+        return np.asarray(np.exp(self._sharpness * (alike - 1.0)))
+
+    def _rows(self, numbers: IntArray) -> FloatArray:
+        """For each pair e^{i Δ} where both are on outputs, else which kinds of source the two are on; weighted by √share.
+
+        The product of two such rows is the weighted sum of cos(Δ − Δ′), of 1 for pairs of the same still kinds, of 0 for others.
         """
         stages = self._space.stages
-        table = np.zeros((stages + 3, 3), dtype=complex)
-        table[1 : stages + 1, 0] = np.exp(2j * np.pi * np.array([ideal_phase(k, stages) for k in range(1, stages + 1)]))
-        table[stages + 1, 1] = table[stages + 2, 2] = 1.0
-        numbers = np.array([self._space.numbers(wiring) for wiring in wirings], dtype=int).reshape(len(wirings), -1)
-        return np.asarray(table[numbers].transpose(0, 2, 1).reshape(len(wirings), -1))
-
-    def between(self, one: ComplexArray, other: ComplexArray) -> FloatArray:
-        """Kernel values, shape (rows of one, rows of other); 1 between a wiring and itself, its turns and its mirror image."""
-        values = self._values(one, other)
-        if self._space.mirror is None:
-            return values
-        crossed = self._values(one, other[:, self._mirrored])
-        return (values + crossed) / np.sqrt(np.outer(self._with_image(one), self._with_image(other)))
-
-    def _with_image(self, features: ComplexArray) -> FloatArray:
-        """Similarity of each wiring to itself and its mirror image together."""
-        image = features[:, self._mirrored]
-        return 1.0 + np.exp(self._sharpness * (self._pair_mean(features[:, None, :], image[:, :, None])[:, 0, 0] - 1.0))
+        kind = np.maximum(numbers - stages, 0)
+        phase = np.array([0.0] + [ideal_phase(k, stages) for k in range(1, stages + 1)] + [0.0, 0.0])[numbers]
+        turn = np.exp(2j * np.pi * (phase[:, self._first] - phase[:, self._second]))
+        kinds = KINDS * kind[:, self._first] + kind[:, self._second]
+        turn = np.where(kinds == 0, turn, 0.0) * self._share
+        still = range(1, KINDS**2) if self._may_be_still else ()
+        return np.concatenate(
+            [turn.real, turn.imag, *(np.where(kinds == code, self._share, 0.0) for code in still)], axis=1
+        )
 
     @property
-    def _mirrored(self) -> NDArray[np.intp]:
-        order = np.asarray(self._space.mirror)
-        inlets = len(order)
-        return np.concatenate([order, order + inlets, order + 2 * inlets])
+    def _may_be_still(self) -> bool:
+        return bool(self._space.rules.still) or any(s > self._space.stages for _, s in self._space.constraints.fixed)
 
-    def _values(self, one: ComplexArray, other: ComplexArray) -> FloatArray:
-        return np.exp(self._sharpness * (self._pair_mean(one, other.T) - 1.0))
 
-    def _pair_mean(self, one: ComplexArray, other: ComplexArray) -> FloatArray:
-        """Mean over pairs of inlets of the cosine of their difference of differences.
+def pairs_of(number: int) -> tuple[IntArray, IntArray]:
+    """First and second members of all pairs of so many things."""
+    first, second = np.array(list(combinations(range(number), 2)), dtype=int).reshape(-1, 2).T
+    return first, second
 
-        With z the rotations of inlets on outputs in both wirings and m, q the numbers of inlets alike on outputs and alike still:
-        Σ_{i≠j} = |Σ z|² + q² + 2 m q − m − q. A pair that is on an output in one wiring only counts as 0.
-        """
-        inlets = one.shape[-1] // 3
-        turning = one[..., :inlets] @ np.conj(other[..., :inlets, :])
-        moving = np.abs(one[..., :inlets]) @ np.abs(other[..., :inlets, :])
-        still = (one[..., inlets:] @ np.conj(other[..., inlets:, :])).real
-        pairs = np.abs(turning) ** 2 + still**2 + 2.0 * moving * still - moving - still
-        if inlets < 2:
-            return np.ones_like(pairs)
-        return np.asarray(pairs / (inlets * (inlets - 1)), dtype=float)
+
+def pair_weights(places: FloatArray) -> FloatArray:
+    """Share of each pair of places (n, 2), ∝ 1/distance; distances below the smallest one between different places count as that."""
+    first, second = pairs_of(len(places))
+    distance = np.hypot(*(places[first] - places[second]).T)
+    apart = distance[distance > 0.0]
+    weights = 1.0 / np.maximum(distance, np.min(apart) if len(apart) else 1.0)
+    return np.asarray(weights / np.sum(weights))

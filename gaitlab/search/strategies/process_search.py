@@ -10,7 +10,7 @@ import numpy as np
 from gaitlab.search.settings import SHORT_PERIODS
 from gaitlab.search.strategies.ask_tell import Ask, Reading
 from gaitlab.search.strategies.candidates import Candidates
-from gaitlab.search.strategies.gaussian import posterior
+from gaitlab.search.strategies.gaussian import likely_scale, posterior
 from gaitlab.search.strategies.kernel import WiringKernel
 from gaitlab.search.strategies.settling import Settling
 from gaitlab.wiring.space import WiringSpace
@@ -27,8 +27,8 @@ class ProcessTuning:
 
     first: int = 8
     batch: int = 4
-    daring: float = 2.0
-    settled_share: float = 0.06
+    daring: float = 3.0
+    settled_share: float = 0.05
 
 
 def default_budget(space: WiringSpace) -> int:
@@ -101,9 +101,9 @@ class ProcessSearch:
         number = min(self._tuning.batch, self._short_left, len(pool))
         features, seen = self._kernel.features(pool), self._kernel.features(self._walked)
         inner, outer = self._kernel.between(seen, seen), self._kernel.between(features, seen)
-        chosen: list[int] = []
+        scale, chosen = likely_scale(inner, known), list[int]()
         for _ in range(number):
-            mean, deviation = posterior(inner, known).predicted(outer)
+            mean, deviation = posterior(inner, known, scale).predicted(outer)
             hope = mean + self._tuning.daring * deviation
             hope[chosen] = -np.inf
             pick = int(np.argmax(hope))
@@ -117,5 +117,5 @@ class ProcessSearch:
         """Kernel and readings as if the picked wiring had been read at its mean."""
         row = outer[pick : pick + 1]
         inner = np.block([[inner, row.T], [row, np.ones((1, 1))]])
-        outer = np.hstack([outer, self._kernel.between(features, features[pick : pick + 1])])
+        outer = np.hstack([outer, self._kernel.between(features, features[:, pick : pick + 1])])
         return inner, outer, np.append(known, mean)
