@@ -10,6 +10,7 @@ from __future__ import annotations
 import csv
 import math
 import re
+import stat
 from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path
@@ -22,6 +23,7 @@ from gaitlab.errors import InputError, must
 FloatArray = NDArray[np.float64]
 
 ROWS_LEAST = 20  # fewer samples cannot show two periods; chosen by us
+BYTES_MOST = 200_000_000  # as many rows as allowed, with ten columns; chosen by us
 ROWS_MOST = 2_000_000  # chosen by us: an hour at 500 samples a second
 VACUUM_RANGE_KPA = (-20.0, 101.4)  # a little pressure may show while venting; nothing is emptier than empty
 _STAGE = re.compile(r"stage_([1-9][0-9]?)_kPa")
@@ -45,10 +47,22 @@ def read_traces(path: str | Path, *, stages: int, inlets: tuple[str, ...]) -> Be
     """
     path = Path(path)
     try:
+        _check_file(path)
         with path.open(newline="", encoding="utf-8-sig") as file:
             return _traces(_rows(file), str(path), stages, inlets)
-    except (OSError, UnicodeDecodeError, csv.Error) as error:
+    except InputError:
+        raise
+    except (OSError, ValueError, csv.Error) as error:
         raise InputError(must("trace file", "a readable UTF-8 CSV file", str(path), str(error))) from None
+
+
+def _check_file(path: Path) -> None:
+    """Refuses what would be read for ever: devices, pipes, and files that are no log of a bench test."""
+    facts = path.stat()
+    if not stat.S_ISREG(facts.st_mode):
+        raise InputError(must("trace file", "a file", str(path), "name the .csv file itself"))
+    if facts.st_size > BYTES_MOST:
+        raise InputError(must(f"{path}: size", f"at most {BYTES_MOST} bytes", facts.st_size, "thin the samples out"))
 
 
 _Row = tuple[int, list[str]]
