@@ -179,6 +179,7 @@ def _print_human(run: RingRun, facts: dict[str, Any]) -> None:
         ]
     if "starts" in facts:
         rows.append(("other starts", _starts_text(facts["starts"])))
+    rows += [("note", note) for note in facts["notes"]]
     print_facts(rows)
     print_table(STAGE_HEADERS, stage_rows(run))
 

@@ -8,6 +8,7 @@ import numpy as np
 
 from gaitlab.ring.measures import stage_lags
 from gaitlab.ring.sequence import alternate_order
+from gaitlab.ring.verdict import OSCILLATES
 from gaitlab.ring.waves import RingRun
 from gaitlab.robot.fields import KILO
 from gaitlab.robot.records import Robot
@@ -46,8 +47,20 @@ def ring_facts(run: RingRun) -> dict[str, Any]:
         "supply_vacuum_kPa": {"mean": run.supply_mean_Pa / KILO, "min": run.supply_min_Pa / KILO},
         "air_mg_per_period": run.air_kg_per_period * MG_PER_KG,
         "harmonic": run.harmonic,
+        "notes": margin_notes(run),
         "margins": {_edge_name(name): _edge_value(name, value) for name, value in run.details},
     }
+
+
+def margin_notes(run: RingRun) -> list[str]:
+    """What is to say of a ring that runs below its margin; nothing of any other."""
+    margin_Pa = dict(run.details).get("high_margin_Pa", 0.0)
+    if run.outcome != OSCILLATES or margin_Pa >= 0.0:
+        return []
+    return [
+        f"runs, but below the margin: an output peaks {-margin_Pa / KILO:.3g} kPa under the level where the next valve takes "
+        "hold, so the swing is small and a leak stops it; the supply is too weak"
+    ]
 
 
 def _edge_name(name: str) -> str:

@@ -13,7 +13,7 @@ from gaitlab.air.gas import DENSITY_ANR_KG_M3
 from gaitlab.cli.files import write_new
 from gaitlab.cli.options import force_option, json_option, robot_argument, wiring_option
 from gaitlab.cli.output import print_facts, print_failure, print_json
-from gaitlab.cli.ring_facts import wiring_or_even
+from gaitlab.cli.ring_facts import margin_notes, wiring_or_even
 from gaitlab.robot.circuit import Pump, PumpTable, Syringe
 from gaitlab.robot.fields import KILO, MILLI, MINUTE_LITRE
 from gaitlab.robot.reader import read_robot
@@ -50,7 +50,7 @@ def command(robot_path: Path, wiring_text: str | None, plot: Path | None, force:
       gaitlab supply robots/tray_row5.toml --plot pump.png
       gaitlab supply robots/tray_row5.toml --wiring "a=1 b=3 c=5 d=2 e=4" --json
     """
-    from gaitlab.ring.budget import air_budget
+    from gaitlab.ring.budget import air_budget, dead_end
     from gaitlab.ring.pattern import load_pattern
     from gaitlab.ring.solve import ring_run
 
@@ -62,6 +62,8 @@ def command(robot_path: Path, wiring_text: str | None, plot: Path | None, force:
     if isinstance(robot.supply, Syringe):
         facts |= _stroke_facts(robot, wiring, run, walked=wiring_text is not None)
     if not budget.alive:
+        if not as_json:
+            _print_starved(facts, dead_end(pattern))
         print_failure(run.outcome, run.remedy, as_json=as_json, **facts)
     if plot is not None:
         write_new(plot, _picture(robot, pattern, run, budget), force=force)
@@ -72,14 +74,15 @@ def command(robot_path: Path, wiring_text: str | None, plot: Path | None, force:
 
 
 def supply_facts(run: RingRun, budget: AirBudget) -> dict[str, Any]:
-    """The budget as --json prints it."""
+    """The budget as --json prints it; `pump_ok` where the supply meets the rule that the smallest pump is found by."""
     return {
         "mean_flow_L_min_ANR": budget.flow_m3_s_ANR / MINUTE_LITRE,
         "working_vacuum_kPa": budget.working_Pa / KILO,
         "least_vacuum_kPa": budget.least_Pa / KILO,
-        "pump_ok": budget.alive,
+        "pump_ok": budget.enough,
         "smallest_free_flow_L_min": budget.smallest_m3_s / MINUTE_LITRE,
         "period_s": run.period_s,
+        "notes": margin_notes(run),
     }
 
 
@@ -115,8 +118,29 @@ def _print_human(facts: dict[str, Any]) -> None:
             ("travel per pull", _travel_words(facts["travel_mm_per_stroke"])),
         ]
     else:
-        rows.append(("smallest pump", f"{facts['smallest_free_flow_L_min']:.3g} L/min free flow, same dead end"))
+        rows.append(("smallest pump", _smallest_words(facts)))
+    rows += [("note", note) for note in facts["notes"]]
     print_facts(rows)
+
+
+def _print_starved(facts: dict[str, Any], dead_end_Pa: float) -> None:
+    """What a supply that does not carry the ring leaves, and the pump that would."""
+    if "periods_per_stroke" in facts:
+        return
+    print_facts(
+        [
+            ("supply vacuum", f"{facts['working_vacuum_kPa']:.4g} kPa mean, {facts['least_vacuum_kPa']:.4g} kPa least"),
+            ("dead end", f"{dead_end_Pa / KILO:.4g} kPa"),
+            ("smallest pump", _smallest_words(facts)),
+        ]
+    )
+
+
+def _smallest_words(facts: dict[str, Any]) -> str:
+    smallest = facts["smallest_free_flow_L_min"]
+    if math.isnan(smallest):
+        return "none with this dead end keeps the ring alive"
+    return f"{smallest:.3g} L/min free flow, same dead end"
 
 
 def _travel_words(travel_mm: float) -> str:

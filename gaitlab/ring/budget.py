@@ -26,15 +26,18 @@ PATIENT = Settings(cuts_max=25)  # a pump at its limit is not waited for longer
 
 @dataclass(frozen=True)
 class AirBudget:
-    """Mean draw [kg/s], mean and least gauge vacuum [Pa] it leaves, and the least free flow [m³/s] that keeps the ring alive.
+    """Mean draw [kg/s], mean and least gauge vacuum [Pa] it leaves, and the least free flow [m³/s] that is enough.
 
-    `smallest_m3_s` is nan for a syringe, and where no pump of that dead end does.
+    `alive`: the ring runs on its supply. `enough`: it runs, and no output peaks below the level where the next valve takes
+    hold (`holds_on`); the smallest pump is judged by the same rule. `smallest_m3_s` is nan for a syringe, and where no pump
+    of that dead end is enough.
     """
 
     flow_kg_s: float
     working_Pa: float
     least_Pa: float
     alive: bool
+    enough: bool
     smallest_m3_s: float
 
     @property
@@ -46,9 +49,19 @@ class AirBudget:
 def air_budget(pattern: LoadPattern, run: RingRun) -> AirBudget:
     """The budget of a solved load pattern; the smallest pump has the file's dead end, curve law and buffer."""
     smallest = float("nan") if isinstance(pattern.supply, Syringe) else smallest_free_flow(pattern)
-    alive = run.outcome == OSCILLATES
+    alive, enough = run.outcome == OSCILLATES, holds_on(run)
+    if enough and isinstance(pattern.supply, Pump | PumpTable):
+        smallest = float(np.fmin(smallest, free_flow(pattern.supply)))
     flow = run.air_kg_per_period / run.period_s if alive else float("nan")
-    return AirBudget(flow, run.supply_mean_Pa, run.supply_min_Pa, alive, smallest)
+    return AirBudget(flow, run.supply_mean_Pa, run.supply_min_Pa, alive, enough, smallest)
+
+
+def holds_on(run: RingRun) -> bool:
+    """Whether a ring runs with every output's peak past the level where the next valve takes hold.
+
+    One that runs below it has a small swing and stops with the next leak.
+    """
+    return run.outcome == OSCILLATES and dict(run.details)["high_margin_Pa"] >= 0.0
 
 
 def smallest_free_flow(pattern: LoadPattern) -> float:
@@ -67,7 +80,7 @@ def smallest_free_flow(pattern: LoadPattern) -> float:
     vacuum, flow = pump_curve(pattern)
     factor = asked / float(np.interp(least, vacuum, flow))
     for _ in range(TRIES_MAX if np.isfinite(factor) else 0):
-        if _keeps_alive(replace(pattern, supply=scaled(pattern.supply, factor))):
+        if holds_on(pattern_run(replace(pattern, supply=scaled(pattern.supply, factor)), settings=PATIENT)):
             return factor * free_flow(pattern.supply)
         factor *= 1.0 + PART
     return float("nan")
@@ -80,11 +93,6 @@ def least_vacuum(pattern: LoadPattern) -> float:
     """
     valves = [valve_numbers(stage.valve) for stage in pattern.stages]
     return max((v.threshold_Pa + 0.5 * v.opening_span_Pa) / max(1.0 - v.sealing, 1e-9) for v in valves)
-
-
-def _keeps_alive(pattern: LoadPattern) -> bool:
-    run = pattern_run(pattern, settings=PATIENT)
-    return run.outcome == OSCILLATES and dict(run.details)["high_margin_Pa"] >= 0.0
 
 
 def free_flow(supply: Supply) -> float:

@@ -145,3 +145,25 @@ def test_a_dead_supply_exits_1(tmp_path: Path) -> None:
     robot = changed(tmp_path, dead_end_vacuum_kPa="dead_end_vacuum_kPa = 18")
     done = gaitlab("ring", robot, "--json")
     assert done.code == 1 and json.loads(done.out)["outcome"] == "too_weak"
+
+
+def test_a_starved_ring_is_told_its_smallest_pump(tmp_path: Path) -> None:
+    """The remedy points to the smallest free flow: both it and the vacuum left are printed, in words as in JSON."""
+    robot = changed(tmp_path, free_flow_L_min="free_flow_L_min = 0.6")
+    done = gaitlab("supply", robot)
+    facts = json.loads(gaitlab("supply", robot, "--json").out)
+    assert done.code == 1 and facts["outcome"] == "starves" and facts["pump_ok"] is False
+    assert f"{facts['smallest_free_flow_L_min']:.3g} L/min free flow" in done.out
+    assert f"{facts['working_vacuum_kPa']:.4g} kPa mean" in done.out and "dead end       60 kPa" in done.out
+    assert done.out.index("smallest pump") < done.out.index("outcome: starves")
+
+
+@pytest.mark.parametrize("command", ["ring", "supply"])
+def test_a_ring_below_its_margin_is_said_to_be(command: str, tmp_path: Path) -> None:
+    """It oscillates, yet the pump is not enough: named in words and in JSON, and not where the margin is wide."""
+    robot = changed(tmp_path, free_flow_L_min="free_flow_L_min = 1.8")
+    facts = json.loads(gaitlab(command, robot, "--json").out)
+    assert facts["outcome"] == "oscillates" and "below the margin" in facts["notes"][0]
+    assert facts.get("pump_ok", False) is False
+    assert "below the margin" in gaitlab(command, robot).out
+    assert json.loads(gaitlab(command, str(TRAY), "--json").out)["notes"] == []

@@ -7,7 +7,7 @@ import pytest
 
 from gaitlab.air.gas import gas_of
 from gaitlab.errors import InputError
-from gaitlab.ring.budget import air_budget, demand, least_vacuum, pump_curve, scaled, smallest_free_flow
+from gaitlab.ring.budget import air_budget, demand, holds_on, least_vacuum, pump_curve, scaled, smallest_free_flow
 from gaitlab.ring.pattern import LoadPattern, load_pattern
 from gaitlab.ring.solve import pattern_run
 from gaitlab.robot.circuit import FixedVacuum, Pump, PumpTable, Syringe
@@ -64,3 +64,15 @@ def test_a_syringe_has_no_smallest_pump() -> None:
     robot = with_supply(tray(), Syringe(1e-6, (0.0, 1.0), (0.0, 1e-4)))
     with pytest.raises(InputError, match="supply must be a pump"):
         smallest_free_flow(load_pattern(robot, in_order(robot)))
+
+
+@pytest.mark.parametrize("free_L_min", [1.8, 1.9, 2.0, 2.2, 9.0])
+def test_a_pump_is_enough_exactly_where_the_smallest_is_no_larger(free_L_min: float) -> None:
+    """One rule for both: a ring that runs below the margin (1.8, 1.9 L/min) runs on a pump that is too small."""
+    robot = with_supply(tray(), free_flow_m3_s=free_L_min / 6e4)
+    small = load_pattern(robot, in_order(robot))
+    run = pattern_run(small)
+    budget = air_budget(small, run)
+    assert budget.alive
+    assert budget.enough == (budget.smallest_m3_s <= free_L_min / 6e4) == (free_L_min > 1.95)
+    assert holds_on(run) == budget.enough
