@@ -84,9 +84,10 @@ def _unsteady_name(circuit: Circuit, run: Settled) -> str:
 
 
 def travelling_edges(circuit: Circuit, state: FloatArray) -> int:
-    """How many edges are on their way round the ring: neighbours that stand on the same side of the switching level."""
+    """How many edges are on their way round the ring: neighbours on the same side of the level that switches the next valve."""
     vacuum = circuit.gas.pressure_Pa - circuit.network.split(state)[0]
-    high = vacuum > np.array([valve.threshold_Pa + 0.5 * valve.opening_span_Pa for valve in circuit.valves])
+    fed = circuit.valves[1:] + circuit.valves[:1]
+    high = vacuum > np.array([valve.threshold_Pa + 0.5 * valve.opening_span_Pa for valve in fed])
     return int(np.sum(high == np.roll(high, 1)))
 
 

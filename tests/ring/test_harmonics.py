@@ -2,17 +2,21 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
-from gaitlab.ring.circuit import circuit_of_pattern
+from gaitlab.air.valve import valve_numbers
+from gaitlab.ring.circuit import circuit_of, circuit_of_pattern
 from gaitlab.ring.harmonics import edges, runs_from_several, starts
 from gaitlab.ring.pattern import load_pattern
 from gaitlab.ring.periodic import nudged
 from gaitlab.ring.solve import run_from
 from gaitlab.ring.verdict import travelling_edges
+from gaitlab.robot.circuit import StageOverride
 from gaitlab.robot.records import Robot
-from tests.ring.robots import tray, unloaded, with_ring, with_supply
+from tests.ring.robots import in_order, tray, unloaded, with_ring, with_supply
 
 
 def plain(stages: int) -> Robot:
@@ -37,6 +41,16 @@ def test_edges_are_counted_as_put() -> None:
     for h in (1, 3, 5, 7):
         assert travelling_edges(circuit, edges(circuit, h)) == h
     assert [s.name for s in starts(circuit)] == ["at rest", "evacuated", "one edge", "3 edges", "5 edges", "7 edges"]
+
+
+def test_an_output_is_held_against_the_valve_it_feeds() -> None:
+    """Valve 2 switches at 30 kPa, the others at 16: output 2 at 25 kPa opens valve 3 and counts as high, by hand one edge."""
+    valve = replace(valve_numbers(tray().ring.valve), threshold_Pa=13e3, opening_span_Pa=6e3)
+    stiff = StageOverride(2, valve=replace(valve, threshold_Pa=27e3))
+    circuit = circuit_of(with_ring(tray(), valve=valve, overrides=(stiff,)), in_order(tray()))
+    ambient = circuit.gas.pressure_Pa
+    state = circuit.state(ambient - 1e3 * np.array([0.0, 25.0, 0.0, 0.0, 25.0]), ambient - 50e3, 0.0)
+    assert travelling_edges(circuit, state) == 1
 
 
 @pytest.mark.slow
