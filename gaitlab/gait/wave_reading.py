@@ -23,11 +23,12 @@ def wave_reading(phase: FloatArray, mark: FloatArray, along_m: FloatArray, row: 
     leg maximises the mean resultant length R = Σ_rows |Σ e^(2πi(φ − κ s))| / n (circular-linear regression; Fisher &
     Lee 1992, Biometrics 48, in the form of the mean resultant). Rows (left, right; equal numbers in `row`) share κ and have
     their own φ0. R is the coherence. κ < 0: later towards the head, swing runs tail → head: direct; κ > 0: retrograde;
-    wavelength 1/|κ| legs. Feet whose `mark` is too small do not count; under three feet or three places nothing is read.
+    wavelength 1/|κ| legs. Feet whose `mark` is too small do not count. Nothing is read unless one row has feet at three
+    places: a slope and an offset fit any two, so rows of one or two feet each would always cohere.
     """
     use = mark >= MARK_MIN
     places = _places(along_m)
-    if np.count_nonzero(use) < 3 or len(np.unique(np.round(places[use], 6))) < 3:
+    if max(len(np.unique(np.round(places[use & (row == r)], 6))) for r in np.unique(row)) < 3:
         return WaveReading("none", float("nan"), 0.0)
     resultant = _resultants(phase[use], places[use], row[use])
     best = int(np.argmax(resultant))

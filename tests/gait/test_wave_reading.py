@@ -61,3 +61,13 @@ def test_unmarked_feet_and_too_few_places_read_nothing() -> None:
     assert wave_reading(phases, np.full(5, 0.05), ALONG, ONE_ROW).direction == "none"
     assert wave_reading(phases[:2], PLAIN[:2], ALONG[:2], ONE_ROW[:2]).direction == "none"
     assert wave_reading(phases[:4], PLAIN[:4], np.array([0.1, 0.1, -0.1, -0.1]), np.zeros(4)).direction == "none"
+
+
+def test_rows_of_two_marked_feet_read_nothing() -> None:
+    """Two feet of one row fit some slope whatever they do, and a single foot of the other fits with its own offset."""
+    along, row = np.array([0.1, -0.1, 0.0]), np.array([0.0, 0.0, 1.0])
+    assert wave_reading(np.array([0.0, 0.4, 0.7]), np.ones(3), along, row).direction == "none"
+    along, row = np.repeat([0.05, 0.0, -0.05], 2), np.tile([0.0, 1.0], 3)
+    phase = (np.repeat([0.0, 1 / 3, 2 / 3], 2) + np.tile([0.0, 0.5], 3)) % 1.0
+    assert wave_reading(phase, np.array([1.0, 1, 1, 1, 1, 0]), along, row).direction == "retrograde"
+    assert wave_reading(phase, np.array([1.0, 1, 0, 1, 1, 0]), along, row).direction == "none"
