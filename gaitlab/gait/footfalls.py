@@ -65,7 +65,7 @@ def _without_short_runs(flags: BoolArray, value: bool, shortest: int) -> BoolArr
 def swing_phases(loaded: BoolArray, velocity_m_s: FloatArray, samples_per_period: int) -> tuple[FloatArray, FloatArray]:
     """Phase of the middle of each foot's swing, and how plainly it is marked (0…1); both (F,).
 
-    The phase is that of the first harmonic of the swing weight w: z = 2 Σ w e^(2πi φ) / Σ|w|, arg z / 2π. For a foot that
+    The phase is that of the first harmonic of the swing weight w: z = Σ w e^(2πi φ) / Σ|w|: phase arg z / 2π, mark |z|. For a foot that
     lifts, w is "carries no weight". A foot that never lifts (a skid, a dragged leg) swings when it is carried forward
     against the mean of all its motion, so there w is the body-frame velocity along its larger axis. `velocity_m_s` is
     (T, F, 2). A foot that neither lifts nor moves has mark 0.

@@ -9,7 +9,7 @@ import numpy as np
 from gaitlab.gait.motion import Motion
 from gaitlab.gait.outcomes import DRAGGING, FELL_OVER, LOST_CONTACT
 
-# Limits chosen by us: twice the tilt and a fifth of the flight or rubbing that any gait of the shipped robots needs.
+# Limits chosen by us, from what a robot still on its feet would hardly reach; not measured on gaits.
 TILT_MAX_RAD = math.radians(60.0)
 RUBBING_GAP_M = 1e-4
 RUBBING_SHARE = 0.05

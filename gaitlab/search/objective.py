@@ -31,7 +31,7 @@ class Score:
 def score_of(walk: Walk, objective: str) -> Score:
     """The walk's score under one of `OBJECTIVES`.
 
-    travel: s [m per period], on the robot's own heading at each period's start. speed: s/T [m/s]. straight: s − |drift| − |turn| ·
+    travel: s [m per period], along the robot's mean heading over each period. speed: s/T [m/s]. straight: s − |drift| − |turn| ·
     L/2 [m], half a body length being what the ends sweep sideways (weights chosen by us). air: s/m_air [m/kg],
     the inverse of air per metre, negative for a robot that walks backwards. Raises KeyError for another name.
     """
