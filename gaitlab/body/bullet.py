@@ -20,7 +20,7 @@ Floats = Sequence[float]
 NO_TURN = (0.0, 0.0, 0.0, 1.0)
 # A sphere of a foot sinks this far under its share of the weight, with this time constant, which is critical damping for that
 # share. Rigid spheres carry a body on several feet in as many ways as there are orders of solving, and a symmetric body then
-# turns by up to 2° a period; giving ones keep it under 0.1°, and stiffer ones do not change its travel [measured].
+# turns; on giving ones it walks straight (tests/body/test_engine.py).
 CONTACT_SINK_M = 1e-5
 CONTACT_S = 2e-3
 

@@ -16,15 +16,15 @@ from gaitlab.errors import InputError, must
 
 FloatArray = NDArray[np.float64]
 
-# Bullet silently ignores torque on joints past about 122 [measured].
+# Bullet takes 128 degrees of freedom, six of them the base's, and silently ignores torque on more (from memory).
 JOINTS_MAX = 120
 # A foot may hang this part of its leg's length above the plane the others stand on (chosen by us).
 GAP_FRACTION_MAX = 0.1
-# Explicit damping of the slides: 2 dt k τ/m; past it some wirings blow up while others look right [measured].
+# Explicit damping of the slides: 2 dt k τ/m; past it some wirings blow up while others look right (chosen by us).
 AXIAL_STABILITY_MAX = 2.7
 # Explicit springs and dampers: 2 dt λ + dt² ω² [theory of the semi-implicit Euler step].
 EXPLICIT_STABILITY_MAX = 4.0
-# Below this buckling margin gaits alternate from period to period [measured].
+# Below this buckling margin gaits alternate from period to period (chosen by us).
 BUCKLING_MARGIN_DOUBTFUL = 2.0
 
 

@@ -11,16 +11,16 @@ from xml.etree.ElementTree import Element, SubElement, tostring
 from gaitlab.body.engine import EngineSettings
 from gaitlab.body.records import BodyModel, Joint
 
-# Coulomb's cone as a cone, not a pyramid (a pyramid is 42 % too strong at 45°), and no creep under it [measured].
+# Coulomb's cone as a cone, not a pyramid, whose strength along and across differs from that at 45° by √2.
 CONE = "elliptic"
 IMPRATIO = 10.0
-# Contacts give with this time constant, but never faster than two steps; up to 5 ms agrees with Bullet [measured].
+# Contacts give with this time constant, but never faster than two steps (chosen by us; tests/benchmarks/convergence.py
+# puts walks in both engines side by side).
 CONTACT_S = 0.004
 # Nearly rigid from 0.1 mm of penetration on (chosen by us; Bullet's own slop is a tenth of that).
 SOLIMP = (0.9, 0.99, 1e-3)
 # MuJoCo's cone ties sliding to lifting, so a sliding foot hops. The slower friction answers, the less it hops and the later it
-# sticks: at 8 ms travel is within 3 % of that at 4 ms and feet stay down half again as long; at 20 ms travel falls by 15 %
-# [measured on the row of five legs].
+# sticks (chosen by us between the two; tests/benchmarks/convergence.py puts walks in both engines side by side).
 FRICTION_S = 0.008
 KINDS = {"revolute": "hinge", "prismatic": "slide"}
 

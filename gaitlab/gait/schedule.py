@@ -12,8 +12,8 @@ from gaitlab.errors import InputError, must
 from gaitlab.gait.motion import FloatArray
 from gaitlab.ring.waves import Waves
 
-# The body is looked at this often: duty factors and stances are told to about 1 % of a usual period, and looking costs a
-# sixth of stepping (chosen by us).
+# The body is looked at this often: duty factors and stances are told to about 1 % of a usual period, and what a walk
+# with its measures costs over bare steps is printed by tests/benchmarks/body_speed.py (chosen by us).
 SAMPLE_S = 0.008
 SAMPLES_MIN = 20  # per period; fewer cannot tell a duty factor to 5 % (chosen by us)
 RAMP_SHARE = 0.6  # of the settling time goes into the ramp, the rest lets the body come to rest (chosen by us)

@@ -31,10 +31,23 @@ def ring_run_to_bytes(run: RingRun) -> bytes:
 
 
 def ring_run_from_bytes(data: bytes) -> RingRun:
-    """The run that `ring_run_to_bytes` wrote, bit for bit. Raises InputError for bytes of another format."""
+    """The run that `ring_run_to_bytes` wrote, bit for bit. Raises InputError for other and for damaged bytes."""
+    try:
+        return _run_from(*_unpacked(data))
+    except InputError:
+        raise
+    except Exception as error:  # what a changed byte does to zip, npy, JSON or record is anybody's guess
+        raise InputError(must("stored ring run", "whole", type(error).__name__, "solve it again")) from error
+
+
+def _unpacked(data: bytes) -> tuple[dict[str, Any], dict[str, Any]]:
+    """Words and arrays of the npz."""
     with np.load(io.BytesIO(data), allow_pickle=False) as file:
         arrays = {name: file[name] for name in file.files}
-    words: dict[str, Any] = json.loads(arrays.pop(WORDS).tobytes())
+    return json.loads(arrays.pop(WORDS).tobytes()), arrays
+
+
+def _run_from(words: dict[str, Any], arrays: dict[str, Any]) -> RingRun:
     if words.pop("format") != FORMAT:
         raise InputError(must("stored ring run", f"of format {FORMAT}", "another", "solve it again"))
     waves = words.pop("waves")

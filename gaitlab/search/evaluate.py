@@ -12,6 +12,7 @@ from typing import TypeAlias
 
 from gaitlab.errors import InputError
 from gaitlab.gait.records import Walk, WaveReading
+from gaitlab.ring.waves import RingRun
 from gaitlab.robot.reader import robot_from_document
 from gaitlab.robot.records import Robot
 from gaitlab.search.settings import WalkSettings
@@ -55,17 +56,12 @@ def evaluate(job: Job) -> Evaluation:
     cannot end a search.
     """
     from gaitlab.gait.walk import walk
-    from gaitlab.ring.pattern import load_pattern
-    from gaitlab.ring.solve import ring_run
-    from gaitlab.ring.store import RunStore
 
     begin = time.perf_counter()
     robot, how = robot_of(job.document_json), job.settings
-    shelf: dict[str, bytes] = {}
+    solved = None
     try:
-        if job.ring is not None:
-            shelf[load_pattern(robot, job.wiring).key()] = job.ring
-        ring = ring_run(robot, job.wiring, runs=RunStore(shelf))
+        ring, solved = _ring_of(job, robot)
         done, _ = walk(
             robot,
             job.wiring,
@@ -78,8 +74,23 @@ def evaluate(job: Job) -> Evaluation:
         )
     except InputError as error:
         done = failed_walk(job, REFUSED, str(error))
-    solved = next(iter(shelf.values()), None) if job.ring is None else None
     return Evaluation(done, time.perf_counter() - begin, solved)
+
+
+def _ring_of(job: Job, robot: Robot) -> tuple[RingRun, bytes | None]:
+    """The ring under the job's wiring, and its bytes where it was solved here: bytes that cannot be used are solved anew."""
+    from gaitlab.ring.pattern import load_pattern
+    from gaitlab.ring.solve import ring_run
+    from gaitlab.ring.store import RunStore
+
+    if job.ring is not None:
+        try:
+            return ring_run(robot, job.wiring, runs=RunStore({load_pattern(robot, job.wiring).key(): job.ring})), None
+        except Exception:  # a kept ring only saves time: the solve says what is wrong with the wiring itself
+            pass
+    shelf: dict[str, bytes] = {}
+    ring = ring_run(robot, job.wiring, runs=RunStore(shelf))
+    return ring, next(iter(shelf.values()), None)
 
 
 @dataclass(frozen=True)

@@ -1,4 +1,4 @@
-"""What decides a result, as one hash: robot, engine and numerics, length of walk, the code of the models and its libraries."""
+"""What decides a result, as one hash: robot, engine and numerics, length of walk, the code that decides a row and its libraries."""
 
 from __future__ import annotations
 
@@ -14,23 +14,35 @@ from gaitlab.robot.reader import canonical_document
 from gaitlab.search.settings import WalkSettings
 from gaitlab.wiring.wiring import Wiring
 
-# The packages whose code decides a walk; a change in a report or in a strategy must not throw walks away.
-DECIDING_PACKAGES = ("robot", "air", "ring", "body", "gait")
+# The code that decides what a row of the ledger says; a change in a report or in a strategy must not throw walks away.
+DECIDING_PACKAGES = ("robot", "air", "ring", "body", "wiring", "gait")
+DECIDING_MODULES = (
+    "record_json.py",
+    "search/evaluate.py",
+    "search/objective.py",
+    "search/schema.py",
+    "search/settings.py",
+)
 DECIDING_LIBRARIES = ("numpy", "scipy", "pybullet")
 DECIDING_LIBRARY_OF_ENGINE = {"mujoco": "mujoco"}
 
 
 @cache
 def code_version() -> str:
-    """Hash of the sources of the models and of the versions of the libraries they stand on."""
+    """Hash of the sources that decide a row and of the versions of the libraries they stand on."""
     digest = hashlib.sha256()
     root = Path(gaitlab.__file__).parent
-    for package in DECIDING_PACKAGES:
-        for source in sorted((root / package).rglob("*.py")):
-            digest.update(source.relative_to(root).as_posix().encode() + b"\0" + source.read_bytes() + b"\0")
+    for source in deciding_sources(root):
+        digest.update(source.relative_to(root).as_posix().encode() + b"\0" + source.read_bytes() + b"\0")
     for library in DECIDING_LIBRARIES:
         digest.update(f"{library} {importlib.metadata.version(library)}\0".encode())
     return digest.hexdigest()[:16]
+
+
+def deciding_sources(root: Path) -> list[Path]:
+    """The files below the package's folder `root` on which a row hangs, in a fixed order."""
+    packages = [source for package in DECIDING_PACKAGES for source in sorted((root / package).rglob("*.py"))]
+    return packages + [root / module for module in DECIDING_MODULES]
 
 
 def robot_hash(document: dict[str, Any]) -> str:

@@ -14,14 +14,21 @@ from typing import Any
 
 from gaitlab.errors import RunFolderError
 from gaitlab.search.evaluate import WORKER_LOST, Evaluation, Job
-from gaitlab.search.schema import COLUMNS, ROW_COLUMNS, Row, row_from, row_of
+from gaitlab.search.schema import COLUMNS, ROW_COLUMNS, Row, ring_checksum, row_from, row_of
 from gaitlab.wiring.wiring import Wiring
 
 LOOKUP_SIZE = 500  # keys in one query; below SQLite's oldest limit of 999 variables
 RINGS_MAX = 1000  # solved rings kept, some 40 kB each; most patterns of a large space come up once; chosen by us
 AGAIN = (WORKER_LOST,)  # fates that say nothing about the wiring: walked again on --resume
 
-INSERT = f"INSERT OR IGNORE INTO walks ({', '.join(COLUMNS)}) VALUES ({', '.join('?' * len(COLUMNS))})"
+# A row that is there already wins; anything else that a table refuses is an error.
+INSERT = (
+    f"INSERT INTO walks ({', '.join(COLUMNS)}) VALUES ({', '.join('?' * len(COLUMNS))}) ON CONFLICT (key) DO NOTHING"
+)
+INSERT_RING = """
+INSERT INTO rings SELECT ?, ?, ? WHERE (SELECT count(*) FROM rings) < ? ON CONFLICT (pattern) DO NOTHING
+"""
+INSERT_EQUAL = "INSERT INTO equals VALUES (?, ?) ON CONFLICT (wiring) DO NOTHING"
 
 
 class Ledger:
@@ -78,25 +85,24 @@ class Ledger:
             yield from connection.execute(query, values)
 
     def ring(self, pattern: str) -> bytes | None:
-        """The run of the ring under the load pattern of that key, where it has been kept."""
-        found = next(self.select("SELECT run FROM rings WHERE pattern = ?", (pattern,)), None)
-        return None if found is None else bytes(found[0])
+        """The run of the ring under the load pattern of that key, where it has been kept whole; None where it is damaged."""
+        found = next(self.select("SELECT run, checksum FROM rings WHERE pattern = ?", (pattern,)), None)
+        if found is None or not isinstance(found[0], bytes) or ring_checksum(found[0]) != found[1]:
+            return None
+        return found[0]
 
     def keep_ring(self, pattern: str, run: bytes) -> None:
-        """Keeps a solved ring for other wirings of the same load pattern, up to `RINGS_MAX` of them."""
+        """Keeps a solved ring for other wirings of the same load pattern, up to `RINGS_MAX` of them, in place of a damaged one."""
         with self.told_plainly() as connection:
-            connection.execute(
-                "INSERT OR IGNORE INTO rings SELECT ?, ? WHERE (SELECT count(*) FROM rings) < ?",
-                (pattern, run, RINGS_MAX),
-            )
+            if self.ring(pattern) is None:
+                connection.execute("DELETE FROM rings WHERE pattern = ?", (pattern,))
+            connection.execute(INSERT_RING, (pattern, run, ring_checksum(run), RINGS_MAX))
 
     def note_equals(self, pairs: Iterable[tuple[Wiring, Wiring]]) -> None:
         """Notes wirings that are equal by symmetry to the one that was walked."""
         with self.told_plainly() as connection:
             connection.execute("BEGIN IMMEDIATE")
-            connection.executemany(
-                "INSERT OR IGNORE INTO equals VALUES (?, ?)", ((a.text(), b.text()) for a, b in pairs)
-            )
+            connection.executemany(INSERT_EQUAL, ((a.text(), b.text()) for a, b in pairs))
             connection.execute("COMMIT")
 
     def forget_lost(self) -> int:
@@ -120,6 +126,7 @@ def _fix(said: str) -> str:
         "full": "free some space and go on with --resume",
         "readonly": "give yourself the right to write there, or choose another folder with --out",
         "locked": "wait for the other search to end",
+        "constraint": "the row is none that the tables allow: keep the file and run the wiring with `gaitlab walk --debug`",
         "malformed": "keep the file aside and start anew with --out",
         "not a database": "choose another folder with --out",
     }

@@ -15,7 +15,7 @@ from gaitlab.search.evaluate import Evaluation, Job
 from gaitlab.search.objective import OBJECTIVES, score_of
 from gaitlab.wiring.wiring import HELD, OPEN, Wiring
 
-SCHEMA = 3  # raised when an older reader would misread the tables
+SCHEMA = 4  # raised when an older reader would misread the tables
 
 SCORED = "scored"
 FAILED = "failed"
@@ -41,7 +41,7 @@ CREATE TABLE walks (
 );
 CREATE INDEX walks_by_wiring ON walks (settings, level, wiring);
 CREATE TABLE equals (wiring TEXT PRIMARY KEY, equal_to TEXT NOT NULL) WITHOUT ROWID;
-CREATE TABLE rings (pattern TEXT NOT NULL UNIQUE, run BLOB NOT NULL);
+CREATE TABLE rings (pattern TEXT NOT NULL UNIQUE, run BLOB NOT NULL, checksum INTEGER NOT NULL);
 CREATE VIEW fates AS
     SELECT wiring, level, status AS fate, CASE status WHEN 'failed' THEN outcome ELSE '' END AS detail FROM walks
     UNION ALL SELECT wiring, '', 'equal by symmetry', equal_to FROM equals;
@@ -54,7 +54,10 @@ COLUMNS = (
 
 
 def row_of(job: Job, done: Evaluation, backwards: Wiring | None) -> tuple[Any, ...]:
-    """The values of `COLUMNS` for one finished walk; what is not finite becomes null. The last one is their checksum."""
+    """The values of `COLUMNS` for one finished walk; a measure that is not finite becomes null. The last one is their checksum.
+
+    Raises ValueError for a time that is not finite: every walk takes some.
+    """
     walk = done.walk
     measured = walk.outcome in MEASURED and math.isfinite(walk.travel_m)
     scores = [score_of(walk, objective).value if measured else None for objective in OBJECTIVES]
@@ -69,8 +72,8 @@ def row_of(job: Job, done: Evaluation, backwards: Wiring | None) -> tuple[Any, .
         walk.remedy,
         *(_finite(v) for v in (walk.travel_m, walk.travel_scatter_m, walk.period_s)),
         *(_finite(v) for v in scores),
-        float(walk.simulated_s),
-        float(done.wall_s),
+        _time_s(walk.simulated_s),
+        _time_s(done.wall_s),
         json.dumps(record_to_json(walk), separators=(",", ":")),
     )
     return (*values, checksum(values))
@@ -82,7 +85,19 @@ def checksum(values: tuple[Any, ...]) -> int:
 
 
 def _finite(value: float | None) -> float | None:
-    return value if value is not None and math.isfinite(value) else None
+    """As SQLite gives it back, which knows no negative zero."""
+    return value + 0.0 if value is not None and math.isfinite(value) else None
+
+
+def _time_s(value: float) -> float:
+    if not math.isfinite(value):
+        raise ValueError(f"a walk's time must be finite, got {value}")
+    return value + 0.0
+
+
+def ring_checksum(run: bytes) -> int:
+    """CRC-32 of a kept ring, so that a changed byte is noticed before it is read."""
+    return zlib.crc32(run)
 
 
 @dataclass(frozen=True)

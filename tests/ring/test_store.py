@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import fields
 
 import numpy as np
@@ -45,6 +46,15 @@ def test_bytes_of_another_format_are_refused(monkeypatch: pytest.MonkeyPatch) ->
     monkeypatch.undo()
     with pytest.raises(InputError, match="format"):
         store.ring_run_from_bytes(old)
+
+
+@pytest.mark.parametrize(
+    "damage", [lambda data: b"junk", lambda data: data[:-40], lambda data: data[:300] + b"?" * 9 + data[309:]]
+)
+def test_damaged_bytes_are_refused_without_a_word_of_other_formats(damage: Callable[[bytes], bytes]) -> None:
+    with pytest.raises(InputError, match="stored ring run must be whole") as told:
+        store.ring_run_from_bytes(damage(store.ring_run_to_bytes(ideal())))
+    assert "pickle" not in str(told.value)
 
 
 def test_a_store_keeps_what_was_solved() -> None:

@@ -70,6 +70,16 @@ def test_a_ring_that_does_not_start_is_an_outcome_with_a_remedy() -> None:
     assert walk.remedy and walk.simulated_s == 0.0
 
 
+@pytest.mark.slow
+def test_a_kept_ring_that_cannot_be_read_is_solved_anew() -> None:
+    first = evaluate(job())
+    assert first.ring is not None
+    for damaged in (b"junk", b"", first.ring[:300] + b"?" * 9 + first.ring[309:]):
+        again = evaluate(dataclasses.replace(job(), ring=damaged))
+        assert repr(again.walk) == repr(first.walk)
+        assert again.ring == first.ring
+
+
 def test_what_a_model_refuses_is_named() -> None:
     """Half a second a step leaves no room for a period's shape."""
     walk = evaluate(dataclasses.replace(job(), settings=WalkSettings(step_s=0.5))).walk

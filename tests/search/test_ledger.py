@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 import math
 import os
+import shutil
 import sqlite3
 import subprocess
 import sys
@@ -17,16 +18,18 @@ from wiring.robots import row_document
 
 from gaitlab.errors import RunFolderError
 from gaitlab.robot.reader import robot_from_document
+from gaitlab.search import identity as identity_module
 from gaitlab.search import ledger as ledger_module
 from gaitlab.search.evaluate import WORKER_LOST, Evaluation, Job, failed_walk
-from gaitlab.search.identity import Identity
+from gaitlab.search.identity import Identity, code_version
 from gaitlab.search.ledger_file import LEDGER_FILE, created, reopened
 from gaitlab.search.run import SearchTask
-from gaitlab.search.schema import SCHEMA
+from gaitlab.search.schema import COLUMNS, SCHEMA, row_of
 from gaitlab.search.settings import WalkSettings
 from gaitlab.wiring.wiring import Wiring
 
 TASK = task_of()
+PACKAGE = Path(identity_module.__file__).parents[1]
 
 
 def jobs(number: int = 3) -> list[Job]:
@@ -219,3 +222,89 @@ def test_rings_are_kept_once_and_up_to_a_limit(tmp_path: Path, monkeypatch: pyte
         for pattern, run in (("p", b"one"), ("p", b"other"), ("q", b"two"), ("r", b"three")):
             ledger.keep_ring(pattern, run)
         assert [ledger.ring(pattern) for pattern in "pqr"] == [b"one", b"two", None]
+
+
+def test_a_damaged_ring_is_not_handed_out_and_is_replaced(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(ledger_module, "RINGS_MAX", 1)
+    with created(tmp_path / LEDGER_FILE, TASK.identity) as ledger:
+        ledger.keep_ring("p", b"whole")
+        for damage in (b"whule", "whole", b""):
+            with ledger.told_plainly() as connection:
+                connection.execute("UPDATE rings SET run = ?", (damage,))
+            assert ledger.ring("p") is None
+        ledger.keep_ring("p", b"anew")
+        assert ledger.ring("p") == b"anew"
+
+
+def test_a_negative_zero_is_no_damage(tmp_path: Path) -> None:
+    """SQLite gives 0.0 back for −0.0."""
+    (job,) = jobs(1)
+    walk = dataclasses.replace(walk_of(job, -0.0), travel_scatter_m=-0.0, simulated_s=-0.0)
+    with created(tmp_path / LEDGER_FILE, TASK.identity) as ledger:
+        ledger.add(job, Evaluation(walk, -0.0), None)
+    with reopened(tmp_path / LEDGER_FILE, TASK.identity) as ledger:
+        assert ledger.number_of_walks() == 1
+
+
+@pytest.mark.parametrize("time_s", [math.nan, math.inf])
+def test_a_time_that_is_none_is_an_error_and_no_lost_row(tmp_path: Path, time_s: float) -> None:
+    (job,) = jobs(1)
+    with created(tmp_path / LEDGER_FILE, TASK.identity) as ledger:
+        with pytest.raises(ValueError, match="time must be finite"):
+            ledger.add(job, Evaluation(walk_of(job, 1.0), time_s), None)
+        with pytest.raises(ValueError, match="time must be finite"):
+            ledger.add(job, Evaluation(dataclasses.replace(walk_of(job, 1.0), simulated_s=time_s), 0.0), None)
+
+
+@pytest.mark.parametrize(("column", "value"), [("wall_s", None), ("status", "lost"), ("walk", None)])
+def test_a_row_that_the_tables_refuse_is_told(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, column: str, value: str | None
+) -> None:
+    """Only a key that is there already is passed over."""
+    (job,) = jobs(1)
+    row = list(row_of(job, by_hash(job), None))
+    row[COLUMNS.index(column)] = value
+    monkeypatch.setattr(ledger_module, "row_of", lambda *_: tuple(row))
+    with (
+        created(tmp_path / LEDGER_FILE, TASK.identity) as ledger,
+        pytest.raises(RunFolderError, match=r"constraint failed.*none that the tables allow"),
+    ):
+        ledger.add(job, by_hash(job), None)
+
+
+@pytest.mark.parametrize(
+    "changed",
+    [
+        "record_json.py",
+        "search/objective.py",
+        "search/evaluate.py",
+        "search/schema.py",
+        "search/settings.py",
+        "wiring/space.py",
+        "wiring/wiring.py",
+        "robot/reader.py",
+        "air/duct.py",
+        "ring/solve.py",
+        "body/bullet.py",
+        "gait/measures.py",
+    ],
+)
+def test_code_version_hangs_on_every_file_that_decides_a_row(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, changed: str
+) -> None:
+    package = tmp_path / "gaitlab"
+    shutil.copytree(PACKAGE, package, ignore=shutil.ignore_patterns("__pycache__"))
+    monkeypatch.setattr(identity_module.gaitlab, "__file__", str(package / "__init__.py"))
+    before = code_version.__wrapped__()
+    with (package / changed).open("a", encoding="utf-8") as file:
+        file.write("# more\n")
+    assert code_version.__wrapped__() != before
+
+
+def test_code_version_does_not_hang_on_reports_and_strategies(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    package = tmp_path / "gaitlab"
+    shutil.copytree(PACKAGE, package, ignore=shutil.ignore_patterns("__pycache__"))
+    monkeypatch.setattr(identity_module.gaitlab, "__file__", str(package / "__init__.py"))
+    for name in ("report/sheet.py", "search/strategies/race.py", "search/run.py", "cli/main.py"):
+        (package / name).write_text("", encoding="utf-8")
+    assert code_version.__wrapped__() == code_version()
