@@ -5,6 +5,8 @@ from __future__ import annotations
 from gaitlab.errors import InputError, must
 
 LEGS_MIN, LEGS_MAX = 3, 15
+PUMP_PER_LEG_L_MIN = 1.8  # keeps the ring near 45 kPa, as `gaitlab ring` on the starter shows; chosen by us
+TRUNK_G_PER_MM = 0.4  # a printed trunk with the ring block in it; chosen by us
 PITCH_MM = (
     34  # distance between neighbouring legs: their length, so that a full bend just misses the next leg; chosen by us
 )
@@ -20,7 +22,14 @@ def starter_text(name: str, legs: int) -> str:
         raise InputError(must("legs", rule, legs))
     rows = "".join(_leg(i, legs) for i in range(legs))
     trunk_mm = PITCH_MM * (legs - 1) + 24
-    return _TEMPLATE.format(name=name, legs=legs, trunk_mm=trunk_mm, trunk_g=round(0.4 * trunk_mm, 1), rows=rows)
+    return _TEMPLATE.format(
+        name=name,
+        legs=legs,
+        pump_L_min=round(PUMP_PER_LEG_L_MIN * legs, 1),
+        trunk_mm=trunk_mm,
+        trunk_g=round(TRUNK_G_PER_MM * trunk_mm, 1),
+        rows=rows,
+    )
 
 
 def _leg(index: int, legs: int) -> str:
@@ -57,10 +66,10 @@ friction_factor = 1.0          # times each foot's friction
 
 # One of: pump (below) | table_vacuum_kPa + table_flow_L_min + buffer_mL | fixed_vacuum_kPa | dead_mL + schedule_s + schedule_mL
 [supply]
-dead_end_vacuum_kPa = 57
-free_flow_L_min = 9.0
+dead_end_vacuum_kPa = 60
+free_flow_L_min = {pump_L_min}
 law = "mass"                   # mass or volume: which flow falls in a straight line with vacuum
-buffer_mL = 60
+buffer_mL = 40
 
 [ring]
 stages = {legs}                     # odd, or the ring latches
@@ -70,22 +79,22 @@ control_mL = 0.05              # air in the control chamber of the next valve
 # One of: square_mm | width_mm + height_mm | bore_mm (each with length_mm), sonic_conductance_dm3_s_bar + critical_ratio,
 # or a bench reading: dead_end_kPa + reading_kPa + free_flow_L_min + law
 [ring.resistor]
-square_mm = 0.5
+square_mm = 0.3
 length_mm = 10
 
 [ring.valve]
-threshold_kPa = 16             # control vacuum at which it starts to open
+threshold_kPa = 18             # control vacuum at which it starts to open
 opening_span_kPa = 6           # and is fully open this much later
 sealing = 0.15                 # kPa of threshold per kPa of flow-side vacuum
 leak_fraction = 1e-4
 hysteresis_kPa = 2
 travel_ms = 8
-open = {{ square_mm = 1.2, length_mm = 6 }}
+open = {{ square_mm = 0.45, length_mm = 6 }}   # vents about twice as fast as the resistor evacuates
 
 # As-built parts of one stage:
 # [[ring.stage]]
 # number = 2
-# resistor = {{ square_mm = 0.52, length_mm = 10 }}
+# resistor = {{ square_mm = 0.32, length_mm = 10 }}
 
 [tubes]
 bore_mm = 2

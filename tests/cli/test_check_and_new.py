@@ -47,6 +47,17 @@ def test_the_starter_file_passes_check(tmp_path: Path, legs: int) -> None:
     assert facts["wirings"]["distinct"] == math.factorial(legs - 1)
 
 
+@pytest.mark.parametrize("legs", [3, 7])
+def test_the_ring_of_the_starter_file_runs(tmp_path: Path, legs: int) -> None:
+    path = tmp_path / "mine.toml"
+    gaitlab("new", str(path), "--legs", str(legs))
+    facts = json.loads(gaitlab("ring", str(path), "--json").out)
+    assert facts["outcome"] == "oscillates"
+    assert facts["supply_vacuum_kPa"]["min"] > 40
+    # A ring of N equal inverters: half a period and 1/(2N) from stage to stage (closed form).
+    assert facts["stage_lag_deg"] == pytest.approx(180 + 180 / legs, abs=1.0)
+
+
 def test_the_starter_file_explains_every_section_it_holds(tmp_path: Path) -> None:
     path = tmp_path / "mine.toml"
     gaitlab("new", str(path))
