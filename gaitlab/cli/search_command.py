@@ -71,7 +71,7 @@ EXIT_INTERRUPTED = 130
     type=WholeNumber(0, 50),
     default=3,
     show_default=True,
-    help="How many of the best are walked again at half step, nudged and in the second engine; 0: none.",
+    help="How many of the best walk again: half step, half inertia factor, moved start, second engine; 0: none.",
 )
 @click.option("--robust", is_flag=True, help="Rank the finalists again over the build tolerances.")
 @click.option("--draws", type=WholeNumber(1, 10_000), default=32, show_default=True, help="Builds drawn with --robust.")

@@ -121,7 +121,8 @@ def print_checked(checked: Checked, objective: str) -> None:
         click.echo(f"\nFinalists again: {verdict(checked.rechecks)}")
         headers = ("recheck", "order kept", "best wiring mm/period", "largest change %", "note")
         print_table(
-            headers, [(r.name, r.order_kept, r.travel_m * 1e3, 100 * r.change, r.note) for r in checked.rechecks]
+            headers,
+            [(r.name, r.order_kept, r.travel_m * 1e3, round(100 * r.change, 1), r.note) for r in checked.rechecks],
         )
     if checked.spread is not None and checked.tolerances is not None:
         click.echo("\nFinalists over the build tolerances:")

@@ -200,7 +200,7 @@ def recheck_table(run: SavedRun) -> Table | None:
         return None
     rows = []
     for check in run.rechecks:
-        kept = {True: "kept", False: "changed", None: "not asked"}[check.order_kept]
+        kept = {True: "kept", False: "changed", None: "none to keep"}[check.order_kept]
         rows.append(
             (
                 Cell(check.name, check.name),

@@ -99,10 +99,21 @@ def rechecks_text(run: SavedRun) -> str:
         return "The order of the finalists was not rechecked in this run."
     asked = [check for check in run.rechecks if check.order_kept is not None]
     kept = sum(bool(check.order_kept) for check in asked)
-    text = f"Order kept in {kept} of {len(asked)} rechecks ({', '.join(check.name for check in run.rechecks)})"
+    names = ", ".join(check.name for check in run.rechecks)
+    text = (
+        f"Order kept in {kept} of {len(asked)} rechecks ({names})" if asked else f"{_no_order(run)} (rechecks: {names})"
+    )
     base = run.best.walk.travel_m
     moves = [abs(check.travel_m / base - 1.0) for check in run.rechecks if math.isfinite(check.travel_m) and base]
     return f"{text}; travel moved by up to {100 * max(moves):.0f} %." if moves else f"{text}."
+
+
+def _no_order(run: SavedRun) -> str:
+    return (
+        "Finalists all tied: no order to keep"
+        if any("all tied" in check.note for check in run.rechecks)
+        else "No order to keep"
+    )
 
 
 def source_text(source: int | str) -> str:

@@ -229,7 +229,7 @@ def run_json(document: Mapping[str, Any], text: str) -> dict[str, Any]:
         "rings": {"best": record_to_json(ring_run(BEST)), "reversed": record_to_json(ring_run(BEST.reversed(5)))},
         "rechecks": [
             {"name": "half the step", "order_kept": True, "travel_m": 0.0110, "note": ""},
-            {"name": "nudged starts", "order_kept": True, "travel_m": 0.0112, "note": ""},
+            {"name": "half inertia factor", "order_kept": True, "travel_m": 0.0112, "note": ""},
             {"name": "second engine", "order_kept": False, "travel_m": 0.0099, "note": "ranks 2 and 3 change places"},
         ],
         "spread": spread_json(),
