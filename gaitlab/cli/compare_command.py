@@ -33,7 +33,9 @@ from gaitlab.trust.direction import Advice
 from gaitlab.trust.speed import SpeedEstimate, estimate_from_walk
 
 NOTHING_WALKED = "nothing_walked"
-REMEDY = "no wiring walked in either direction: try `gaitlab ring` and `gaitlab walk` on one of them"
+REMEDY = (
+    "no wiring walked in either direction: see each outcome, then try `gaitlab ring` and `gaitlab walk` on one of them"
+)
 
 
 @click.command("compare")
@@ -88,6 +90,8 @@ def command(
         "notes": found.notes,
     }
     if not any(_walked(walk) for p in found.pairs for walk in (p.walk, p.backward_walk)):
+        if not as_json:
+            _print_failures(found)
         print_failure(NOTHING_WALKED, REMEDY, as_json=as_json, **facts)
     if as_json:
         print_json(facts)
@@ -103,10 +107,14 @@ def _pair_facts(pair: Pair) -> dict[str, Any]:
     return {
         "wiring": pair.wiring.as_dict(),
         **walk_facts(pair.walk),
+        "remedy": pair.walk.remedy,
+        "wall_s": pair.wall_s,
         "speed_estimate": _estimate_facts(pair.walk),
         "reversed": {
             "wiring": pair.backward.as_dict(),
             **walk_facts(pair.backward_walk),
+            "remedy": pair.backward_walk.remedy,
+            "wall_s": pair.backward_wall_s,
             "speed_estimate": _estimate_facts(pair.backward_walk),
         },
         "advice": _advice_facts(pair.advice),
@@ -172,6 +180,13 @@ def _print(found: Comparison) -> None:
     for note in found.notes:
         click.echo(f"Note: {note}.")
     click.echo(ESTIMATES)
+
+
+def _print_failures(found: Comparison) -> None:
+    """What every walk came to, and what usually helps."""
+    for pair in found.pairs:
+        for wiring, walk in ((pair.wiring, pair.walk), (pair.backward, pair.backward_walk)):
+            click.echo(f"{wiring.text()}: {walk.outcome}" + (f"; {walk.remedy}" if walk.remedy else ""))
 
 
 def _print_estimate(estimate: SpeedEstimate) -> None:

@@ -9,7 +9,7 @@ from dataclasses import dataclass
 from gaitlab.errors import InputError, must
 from gaitlab.gait.records import Walk
 from gaitlab.robot.records import Robot
-from gaitlab.search.evaluate import Job
+from gaitlab.search.evaluate import Evaluation, Job
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.workers import Workers
 from gaitlab.trust.direction import Advice, advice
@@ -21,13 +21,15 @@ from gaitlab.wiring.wiring import Wiring
 
 @dataclass(frozen=True)
 class Pair:
-    """One wiring and the same with its wave reversed: a walk of each, and the advice which way to build it."""
+    """One wiring and the same with its wave reversed: a walk of each, the advice which way to build it, wall times [s]."""
 
     wiring: Wiring
     walk: Walk
     backward: Wiring
     backward_walk: Walk
     advice: Advice
+    wall_s: float
+    backward_wall_s: float
 
 
 @dataclass(frozen=True)
@@ -80,22 +82,23 @@ def _check_once(wirings: Sequence[Wiring]) -> None:
 
 def _walks(
     document: Document, wirings: Sequence[Wiring], settings: WalkSettings, workers: Workers, tell: Callable[[int], None]
-) -> dict[Wiring, Walk]:
+) -> dict[Wiring, Evaluation]:
     text = json.dumps(document)
-    walks: dict[Wiring, Walk] = {}
+    walks: dict[Wiring, Evaluation] = {}
     for job, evaluation in workers.evaluated(Job(text, w, settings, w.text()) for w in wirings):
-        walks[job.wiring] = evaluation.walk
+        walks[job.wiring] = evaluation
         tell(1)
     return walks
 
 
 def _pair(
-    robot: Robot, wiring: Wiring, every: tuple[Wiring, ...], walks: dict[Wiring, Walk], found: Spread | None
+    robot: Robot, wiring: Wiring, every: tuple[Wiring, ...], walks: dict[Wiring, Evaluation], found: Spread | None
 ) -> Pair:
     backward = wiring.reversed(robot.ring.stages)
     scores = None if found is None else found.scores[:, [every.index(wiring), every.index(backward)]]
-    told = advice(walks[wiring], walks[backward], scores=scores)
-    return Pair(wiring, walks[wiring], backward, walks[backward], told)
+    there, back = walks[wiring], walks[backward]
+    told = advice(there.walk, back.walk, scores=scores)
+    return Pair(wiring, there.walk, backward, back.walk, told, there.wall_s, back.wall_s)
 
 
 def _notes(robot: Robot) -> tuple[str, ...]:

@@ -27,7 +27,7 @@ def by_formula(job: Job) -> Evaluation:
     grip = document.get("ground", {}).get("friction_factor", 1.0)
     backward = job.wiring.text() == BACKWARD
     walk = walked(job, 0.008 * grip * (0.1 if backward else 1.0))
-    return Evaluation(dataclasses.replace(walk, duty_factor=(("a", 0.6),), stance=(("a", ((0.0, 0.6),)),)), 0.0)
+    return Evaluation(dataclasses.replace(walk, duty_factor=(("a", 0.6),), stance=(("a", ((0.0, 0.6),)),)), 0.25)
 
 
 def everybody_falls(job: Job) -> Evaluation:
@@ -99,6 +99,30 @@ def test_spread_of_falls_is_a_failed_run(run: Any) -> None:
     facts = json.loads(shown.out)
     assert (shown.code, facts["outcome"]) == (1, "nothing_walked")
     assert facts["wirings"][0]["outcomes"] == {"fell_over": 4}
+    told = run("spread", ROW5, "--wiring", FORWARD, "--draws", "4", evaluating=everybody_falls)
+    assert told.code == 1 and f"{FORWARD}: 4 × fell_over" in told.out and "nothing_walked" in told.out
+
+
+def test_spread_says_how_many_draws_lost_their_worker(run: Any) -> None:
+    def losing(job: Job) -> Evaluation:
+        lost = job.key.startswith("3 ")
+        return Evaluation(failed_walk(job, "worker_lost", ""), 0.0) if lost else by_formula(job)
+
+    words = ("spread", ROW5, "--wiring", FORWARD, "--draws", "8")
+    facts = json.loads(run(*words, "--json", evaluating=losing).out)
+    assert (facts["draws"], facts["lost_draws"], facts["wirings"][0]["chance_walks"]) == (7, 1, 1.0)
+    assert "7 draws, seed 1 (1 more lost their worker and are left out)" in run(*words, evaluating=losing).out
+
+
+def test_spread_of_few_draws_and_of_one_wiring_claims_less(run: Any) -> None:
+    """Rough quantiles are said to be; a wiring alone is best of nothing, two are compared."""
+    one = run("spread", ROW5, "--wiring", FORWARD, "--draws", "16").out
+    two = run("spread", ROW5, "--wiring", FORWARD, "--wiring", BACKWARD, "--draws", "32").out
+    assert "fewer than 32 draws are rough" in one and "rough" not in two
+    row = next(line for line in one.splitlines() if line.startswith(FORWARD) and "100" in line)
+    assert row.split()[-4:] == ["100", "–", "0", "100"]
+    row = next(line for line in two.splitlines() if line.startswith(FORWARD) and "100" in line)
+    assert row.split()[-4:] == ["100", "100", "0", "100"]
 
 
 def test_spread_warns_of_an_unlikely_speed(run: Any) -> None:
@@ -152,6 +176,7 @@ def test_compare_as_json_says_which_direction(run: Any) -> None:
     } <= (pair.keys() & pair["reversed"].keys())
     assert (pair["advice"]["direction"], pair["advice"]["chance_as_given"]) == ("as given", 1.0)
     assert "walks on the spot" in pair["advice"]["words"]
+    assert (pair["wall_s"], pair["reversed"]["wall_s"]) == (0.25, 0.25)
     assert pair["speed_estimate"]["speed_mm_s"] == pytest.approx([12.0, 16.0, 20.0])
 
 
@@ -173,6 +198,7 @@ def test_compare_says_when_stages_are_not_equal(run: Any, tmp_path: Path) -> Non
 def test_compare_of_falls_is_a_failed_run(run: Any) -> None:
     shown = run("compare", ROW5, "--wiring", FORWARD, "--draws", "0", evaluating=everybody_falls)
     assert shown.code == 1 and "nothing_walked" in shown.out
+    assert f"{FORWARD}: fell_over; widen the stance" in shown.out and f"{BACKWARD}: fell_over" in shown.out
 
 
 def test_compare_refuses_a_wiring_given_twice(run: Any) -> None:
