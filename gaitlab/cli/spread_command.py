@@ -19,7 +19,7 @@ from gaitlab.cli.options import (
     workers_option,
 )
 from gaitlab.cli.output import print_failure, print_json, progress, write_new
-from gaitlab.cli.spread_facts import print_spread, spread_facts
+from gaitlab.cli.spread_facts import print_failures, print_spread, spread_facts
 from gaitlab.errors import InputError, must
 from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import read_robot
@@ -91,6 +91,8 @@ def command(
     found = drawn(request, pool)
     facts = spread_facts(found, tolerances)
     if all(w.summary.walks.share == 0 for w in found.wirings):
+        if not as_json:
+            _print_failures(found)
         print_failure(NOTHING_WALKED, REMEDY, as_json=as_json, **facts)
     _draw(found, pictures, force=force)
     if as_json:
@@ -98,6 +100,12 @@ def command(
     else:
         print_spread(found, tolerances)
         click.echo(f"\n{ESTIMATES}")
+
+
+def _print_failures(found: Spread) -> None:
+    click.echo(f"{found.draws} draws, seed {found.seed}")
+    for w in found.wirings:
+        print_failures(w)
 
 
 def _pictures(path: Path, *, force: bool) -> tuple[Path, Path]:

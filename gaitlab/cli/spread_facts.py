@@ -15,6 +15,7 @@ from gaitlab.trust.spread import Spread, WiringSpread
 from gaitlab.trust.summary import Quantiles
 from gaitlab.trust.tolerances import Listed, Tolerances
 
+ROUGH_DRAWS = 32  # below it p05 and p95 lie within the outermost two; chosen by us
 HEADERS = (
     "wiring", "travel p05", "p50", "p95 mm/period", "speed p05", "p50", "p95 mm/s",
     "forward %", "best %", "ring fails %", "walks %",
@@ -25,6 +26,7 @@ def spread_facts(found: Spread, tolerances: Tolerances) -> dict[str, Any]:
     """A spread as --json prints it."""
     return {
         "draws": found.draws,
+        "lost_draws": found.lost,
         "seed": found.seed,
         "finished": found.finished,
         "simulated_s": found.simulated_s,
@@ -108,8 +110,13 @@ def print_spread(found: Spread, tolerances: Tolerances) -> None:
     """A spread in tables: what was drawn, what came out, what it hangs on."""
     _print_tolerances(tolerances)
     cut = "" if found.finished else " (interrupted: the draws that ended)"
-    click.echo(f"\n{found.draws} draws, seed {found.seed}{cut}; quantiles are of the draws that walked")
-    print_table(HEADERS, [_row(w) for w in found.best_first()])
+    lost = f" ({found.lost} more lost their worker and are left out)" if found.lost else ""
+    click.echo(f"\n{found.draws} draws, seed {found.seed}{cut}{lost}; quantiles are of the draws that walked")
+    if found.draws < ROUGH_DRAWS:
+        click.echo(
+            f"p05 and p95 of fewer than {ROUGH_DRAWS} draws are rough: they hang on the one or two outermost builds"
+        )
+    print_table(HEADERS, [_row(w, alone=len(found.wirings) == 1) for w in found.best_first()])
     for w in found.best_first():
         _print_notes(w)
     _print_shares(found)
@@ -141,18 +148,24 @@ def _print_tolerances(tolerances: Tolerances) -> None:
     print_table(("tolerance on", "nominal", "size", "law", "each", "source"), rows)
 
 
-def _row(w: WiringSpread) -> tuple[object, ...]:
+def _row(w: WiringSpread, *, alone: bool) -> tuple[object, ...]:
+    """One wiring; one that is `alone` is best of nothing."""
     s = w.summary
     travel = [q * 1e3 for q in (s.travel_m.p05, s.travel_m.p50, s.travel_m.p95)]
     speed = [q * 1e3 for q in (s.speed_m_s.p05, s.speed_m_s.p50, s.speed_m_s.p95)]
-    chances = [100 * c.share for c in (s.forward, s.best, s.ring_fails, s.walks)]
-    return (w.wiring.text(), *travel, *speed, *chances)
+    forward, best, fails, walks = (100 * c.share for c in (s.forward, s.best, s.ring_fails, s.walks))
+    return (w.wiring.text(), *travel, *speed, forward, None if alone else best, fails, walks)
 
 
-def _print_notes(w: WiringSpread) -> None:
+def print_failures(w: WiringSpread) -> None:
+    """How many draws of a wiring ended as what, where any failed."""
     failed = [f"{n} × {name}" for name, n in w.summary.outcomes if name != "walked"]
     if failed:
         click.echo(f"{w.wiring.text()}: {', '.join(failed)}")
+
+
+def _print_notes(w: WiringSpread) -> None:
+    print_failures(w)
     if w.speed is not None:
         low, middle, high = w.speed.body_lengths_s
         per_period = w.speed.body_lengths_per_period[1]

@@ -55,7 +55,10 @@ class WiringSpread:
 
 @dataclass(frozen=True)
 class Spread:
-    """All wirings over the draws that ended, in the order asked for; `scores` (draws, wirings), nan where nothing walked."""
+    """All wirings over the draws that ended, in the order asked for; `scores` (draws, wirings), nan where nothing walked.
+
+    `lost` draws are left out of everything: a worker died on one of their walks, which says nothing of the wiring.
+    """
 
     draws: int
     seed: int
@@ -63,6 +66,7 @@ class Spread:
     scores: FloatArray
     simulated_s: float
     finished: bool
+    lost: int = 0
 
     def best_first(self) -> tuple[WiringSpread, ...]:
         """The wirings by median travel, the best first; one that never walked last."""
@@ -77,7 +81,8 @@ def spread(request: Request, workers: Workers, *, tell: Callable[[int], None] = 
     """Walks every draw with every wiring; `tell` is called with 1 for each walk that ends.
 
     Ctrl-C ends it with the draws that are complete (`finished` is False). Raises InputError for wirings that are missing or
-    given twice, a number of draws or a seed that is none, and, before any run, for a draw that gives no robot.
+    given twice, a number of draws or a seed that is none, and, before any run, for a draw that gives no robot; after it
+    where no draw is left.
     """
     _check(request)
     collected = _Collected(request)
@@ -88,6 +93,9 @@ def spread(request: Request, workers: Workers, *, tell: Callable[[int], None] = 
             tell(1)
     except KeyboardInterrupt:
         finished = False
+    if not collected.complete() and collected.lost():
+        fix = "close other programs or use fewer --workers"
+        raise InputError(must("spread", "left with at least one draw", "each one's worker was lost", fix))
     if not collected.complete():
         raise InputError(must("spread", "given time for at least one draw", "interrupted before the first ended"))
     return collected.spread(finished=finished)
@@ -95,7 +103,7 @@ def spread(request: Request, workers: Workers, *, tell: Callable[[int], None] = 
 
 def outcome_of(walk: Walk, objective: str = "travel") -> Outcome:
     """What one walk counts as."""
-    started = walk.outcome in (*REMEDIES, REFUSED, WORKER_LOST, BROKE_DOWN)
+    started = walk.outcome in (*REMEDIES, REFUSED, BROKE_DOWN)
     if not math.isfinite(walk.travel_m):
         return Outcome(walk.outcome, started, math.nan, math.nan, math.nan)
     return Outcome(walk.outcome, started, walk.travel_m, walk.speed_m_s, score_of(walk, objective).value)
@@ -137,8 +145,12 @@ class _Collected:
             self._body_length_m = walk.body_length_m
 
     def complete(self) -> list[int]:
-        """Draws of which every wiring has ended."""
-        return sorted(n for n, row in self._rows.items() if len(row) == len(self._request.wirings))
+        """Draws of which every wiring has ended, without those that lost a worker."""
+        return sorted(n for n, row in self._rows.items() if len(row) == len(self._request.wirings) and not _lost(row))
+
+    def lost(self) -> int:
+        """How many draws lost a worker."""
+        return sum(_lost(row) for row in self._rows.values())
 
     def spread(self, *, finished: bool) -> Spread:
         """The statistics of the complete draws."""
@@ -156,12 +168,16 @@ class _Collected:
             )
             for wiring, summary, column in zip(request.wirings, summaries(table), scores.T, strict=True)
         )
-        return Spread(len(complete), request.seed, found, scores, self._simulated_s, finished)
+        return Spread(len(complete), request.seed, found, scores, self._simulated_s, finished, self.lost())
 
     def _speed(self, summary: WiringSummary) -> SpeedEstimate | None:
         if not math.isfinite(summary.travel_m.p50):
             return None
         return estimate_from_draws(summary.travel_m, summary.speed_m_s, self._body_length_m)
+
+
+def _lost(row: dict[int, Outcome]) -> bool:
+    return any(outcome.outcome == WORKER_LOST for outcome in row.values())
 
 
 def _falling(value: float) -> float:

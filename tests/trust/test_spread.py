@@ -130,6 +130,24 @@ def test_failed_draws_are_counted_and_never_win():
     assert (w.summary.forward.share, w.summary.best.share) == (0.5, 0.5)
 
 
+def test_draws_that_lost_a_worker_are_left_out_for_every_wiring():
+    """Sixteen of 64 draws lose a worker on one wiring: both wirings are judged on the other 48, and no chance counts them."""
+
+    def losing(job: Job) -> Evaluation:
+        lost = job.wiring == FORWARD and int(job.key.split()[0]) % 4 == 0
+        return Evaluation(failed_walk(job, "worker_lost", ""), 0.0) if lost else formula(job)
+
+    found = spread(request(FORWARD, OTHER), InProcess(losing))
+    assert (found.draws, found.lost, found.scores.shape) == (48, 16, (48, 2))
+    for w in found.wirings:
+        assert w.summary.walks.share == 1.0 and dict(w.summary.outcomes) == {"walked": 48}
+
+
+def test_a_spread_that_lost_every_worker_says_so():
+    with pytest.raises(InputError, match=r"worker was lost.*fewer --workers"):
+        spread(request(FORWARD, draws=4), InProcess(lambda job: Evaluation(failed_walk(job, "worker_lost", ""), 0.0)))
+
+
 def test_nothing_walked_is_still_a_result():
     (w,) = spread(request(FORWARD), InProcess(lambda job: Evaluation(failed_walk(job, "latches", ""), 0.0))).wirings
     assert w.speed is None and w.sensitivities == () and w.summary.ring_fails.share == 1.0
