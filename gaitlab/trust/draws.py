@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -87,24 +87,30 @@ def drawn_document(tolerances: Tolerances, point: FloatArray, *, number: int) ->
 
 
 def _drawn(document: Document, tolerance: Tolerance, place: Place, u: float, number: int) -> Any:
-    nominal = value_at(document, place)
-    if isinstance(nominal, list):
-        factor = _within_bounds(document, replace(tolerance, truncate=False), place, 1.0, u, number)
-        return [factor * x for x in nominal]
-    return _within_bounds(document, tolerance, place, float(nominal), u, number)
-
-
-def _within_bounds(
-    document: Document, tolerance: Tolerance, place: Place, nominal: float, u: float, number: int
-) -> float:
-    key = key_of(place)
+    """The number at `place`, or its whole list times one drawn factor, within the key's bounds."""
+    nominal, key = value_at(document, place), key_of(place)
+    whole = isinstance(nominal, list)
+    middle = 1.0 if whole else float(nominal)
     if tolerance.truncate:
-        u = _truncated(tolerance, nominal, u, *_bounds(key))
-    value = drawn_value(tolerance, nominal, u)
-    if key is not None and _breaks(key, value):
-        fix = "a smaller tolerance, or truncate = true in its [[tolerance]]"
-        raise InputError(must(f"draw {number}: {dotted(document, place)}", key.rule(), round(value, 9), fix))
-    return value
+        low, high = _bounds(key)
+        u = _truncated(tolerance, middle, u, *(_factor_bounds(nominal, low, high) if whole else (low, high)))
+    value = drawn_value(tolerance, middle, u)
+    values = [value * x for x in nominal] if whole else [value]
+    for one in values:
+        if key is not None and _breaks(key, one):
+            fix = "a smaller tolerance, or truncate = true in its [[tolerance]]"
+            raise InputError(must(f"draw {number}: {dotted(document, place)}", key.rule(), round(one, 9), fix))
+    return values if whole else value
+
+
+def _factor_bounds(values: Sequence[float], low: float, high: float) -> tuple[float, float]:
+    """Between which factors every one of `values` stays from `low` to `high`; a value of 0 bounds nothing.
+
+    >>> _factor_bounds([0.0, 10.0, 40.0], 0.0, 60.0)
+    (0.0, 1.5)
+    """
+    pairs = [sorted((low / x, high / x)) for x in values if x]
+    return max((p[0] for p in pairs), default=-math.inf), min((p[1] for p in pairs), default=math.inf)
 
 
 def drawn_value(tolerance: Tolerance, nominal: float, u: float) -> float:

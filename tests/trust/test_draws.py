@@ -1,5 +1,6 @@
 """Draws: distributions against their closed forms, bounds, seeds, and what a bad tolerance says."""
 
+import dataclasses
 import json
 import tracemalloc
 from pathlib import Path
@@ -131,6 +132,19 @@ def test_one_number_of_a_list_and_a_whole_list():
         assert 33 <= d.document["body"]["leg"][1]["at_mm"][0] <= 35
         flow = d.document["supply"]["table_flow_L_min"]
         assert flow[2] == 0.0 and flow[0] / flow[1] == pytest.approx(9 / 4)
+
+
+def test_truncate_keeps_every_number_of_a_whole_list_within_bounds():
+    """A pump whose flow is known to ±200 %: refused below 0 as it stands; cut, its factor follows scipy's truncated normal."""
+    document = read_robot(ROW5).document
+    document["supply"] = {"table_vacuum_kPa": [0, 30, 57], "table_flow_L_min": [9.0, 4.0, 0.0], "buffer_mL": 60}
+    wide = Tolerance("supply.table_flow_L_min", "normal", percent=200.0)
+    with pytest.raises(InputError, match=r"draw \d+: supply\.table_flow_L_min must be at least 0"):
+        list(draws(tolerances_of(document, [wide]), 64, seed=0))
+    cut = tolerances_of(document, [dataclasses.replace(wide, truncate=True)])
+    flows = np.array([d.document["supply"]["table_flow_L_min"] for d in draws(cut, 512, seed=0)])
+    assert np.all(flows >= 0.0) and flows[:, 1] == pytest.approx(flows[:, 0] * 4 / 9)
+    assert stats.kstest(flows[:, 0] / 9.0, stats.truncnorm(-1.0, np.inf, loc=1.0).cdf).statistic < 0.01
 
 
 def test_memory_does_not_grow_with_the_number_of_draws(row5):
