@@ -94,7 +94,8 @@ class MeasuredValve:
         threshold = self.fit.threshold_Pa(self.flow_vacuum_Pa, self.sealing)
         if threshold <= 0.0:
             rule = f"below {self.fit.start_Pa / self.flow_vacuum_Pa:.3f} for a valve that opened at this control vacuum"
-            raise InputError(must("sealing", rule, self.sealing, "measure it (--passed)"))
+            fix = "give this valve's own with --sealing, or measure it with --passed"
+            raise InputError(must("sealing", rule, self.sealing, fix))
         return threshold
 
 

@@ -7,6 +7,7 @@ import math
 from pathlib import Path
 
 from gaitlab.errors import InputError, must
+from gaitlab.trust.trace_csv import unreadable
 
 ROWS_MOST = 10_000  # chosen by us: a valve curve has a few dozen points
 
@@ -23,7 +24,7 @@ def read_columns(path: Path, names: tuple[str, str]) -> tuple[list[float], list[
             (number, [cell.strip() for cell in next(csv.reader([line]))]) for number, line in lines[: ROWS_MOST + 1]
         ]
     except (OSError, UnicodeDecodeError, csv.Error) as fault:
-        raise InputError(must("table file", "a readable UTF-8 CSV file", str(path), str(fault))) from None
+        raise InputError(unreadable("table file", path, fault)) from None
     header = rows[0][1] if rows else []
     missing = [name for name in names if name not in header]
     if missing:

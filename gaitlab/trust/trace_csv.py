@@ -53,7 +53,15 @@ def read_traces(path: str | Path, *, stages: int, inlets: tuple[str, ...]) -> Be
     except InputError:
         raise
     except (OSError, ValueError, csv.Error) as error:
-        raise InputError(must("trace file", "a readable UTF-8 CSV file", str(path), str(error))) from None
+        raise InputError(unreadable("trace file", path, error)) from None
+
+
+def unreadable(name: str, path: Path, error: Exception) -> str:
+    """The message for a CSV file that cannot be read: what is wrong with it, and what to do about that."""
+    missing = isinstance(error, FileNotFoundError)
+    reason = (getattr(error, "strerror", None) or str(error)).lower()
+    fix = "check the name and the folder" if missing else "save it as CSV in UTF-8, where you may read it"
+    return f"{name} must be a readable UTF-8 CSV file, got {str(path)!r}: {reason}; usual fix: {fix}"
 
 
 def _check_file(path: Path) -> None:

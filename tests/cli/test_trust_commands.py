@@ -262,6 +262,12 @@ def test_match_refuses_what_is_no_log(tmp_path: Path, text: str) -> None:
     assert shown.code == 2 and "bad.csv" in shown.err and shown.out == ""
 
 
+def test_match_of_a_missing_file_says_what_helps(tmp_path: Path) -> None:
+    shown = gaitlab("match", ROW5, str(tmp_path / "absent.csv"))
+    assert shown.code == 2
+    assert "absent.csv': no such file or directory; usual fix: check the name" in shown.err and "Errno" not in shown.err
+
+
 @pytest.mark.slow
 def test_spread_and_compare_with_real_walks() -> None:
     """Two builds of two wirings through rings, bodies and worker processes; the same seed gives the same bytes."""

@@ -94,6 +94,14 @@ def test_bad_options_end_with_exit_code_2(curve: str, extra: tuple[str, ...], me
     assert message in done.err
 
 
+def test_a_refused_default_sealing_names_the_option(curve: str, tmp_path: Path) -> None:
+    soft = [(c / 2, q) for c, q in JENSEN_FLOW]
+    table = written(tmp_path / "soft.csv", "control_kPa,flow_L_min", [(c, 1e-3 * q) for c, q in soft])
+    done = gaitlab("valve", table, "--flow-vacuum-kPa", "87")
+    assert done.code == 2
+    assert "got 0.32" in done.err and "with --sealing" in done.err
+
+
 def test_sealing_is_given_or_measured_not_both(curve: str, passed: str) -> None:
     both = ("--passed", passed, "--supply-kPa", "87", "--sealing", "0.3")
     done = gaitlab("valve", curve, "--flow-vacuum-kPa", "87", *both)
@@ -131,3 +139,4 @@ def test_a_missing_file_is_named(tmp_path: Path) -> None:
     done = gaitlab("valve", str(tmp_path / "none.csv"), "--flow-vacuum-kPa", "50")
     assert done.code == 2
     assert "readable UTF-8 CSV file" in done.err
+    assert "no such file or directory; usual fix: check the name" in done.err.lower() and "Errno" not in done.err
