@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from pathlib import Path
 from typing import Any
 
@@ -11,17 +12,25 @@ from gaitlab.cli.options import json_option, robot_argument, wiring_for, wiring_
 from gaitlab.cli.output import print_failure, print_json, print_table, progress, warn
 from gaitlab.ring.solve import ring_run
 from gaitlab.ring.waves import RingRun
+from gaitlab.robot.fields import ML
 from gaitlab.robot.reader import read_robot
 from gaitlab.robot.records import Robot
 from gaitlab.trust.as_built import conductance_factor
 from gaitlab.trust.as_built_toml import as_built_toml
 from gaitlab.trust.cautions import BENCH, ESTIMATES
 from gaitlab.trust.diagnosis import Finding, cannot_tell, counted_backwards, findings, resting_words
-from gaitlab.trust.matching import ROUNDS_MAX, Match, matched, unknowns_of
+from gaitlab.trust.matching import ROUNDS_MAX, Fitted, Match, decided_build, matched, unknowns_of
 from gaitlab.trust.trace_csv import read_traces
 from gaitlab.trust.trace_reading import TraceReading, read_rhythm
 from gaitlab.wiring.wiring import OPEN, Wiring
 
+UNITS = {
+    "opening": "× drawn side or bore",
+    "leak": "of the open valve",
+    "volume": "mL",
+    "supply flow": "× drawn",
+    "valve threshold": "× drawn",
+}
 POOR_FIT = "poor_fit"
 POOR_FIT_REMEDY = (
     "the model cannot follow these traces by resistors, leaks, volumes, supply and thresholds alone: check that the columns name "
@@ -60,7 +69,9 @@ def command(robot_path: Path, traces_path: Path, wiring_text: str | None, as_jso
     measured = {"measured": _measured_facts(reading)}
     if reading.outcome != "oscillates":
         words = resting_words(robot, reading) if reading.outcome == "rests" else ()
-        print_failure(reading.outcome, " ".join([*words, reading.remedy]), as_json=as_json, diagnosis=words, **measured)
+        print_failure(
+            reading.outcome, "; ".join([*words, reading.remedy]), as_json=as_json, diagnosis=words, **measured
+        )
     expected = ring_run(robot, wiring)
     match = _matched(robot, wiring, reading)
     told = findings(robot, wiring, reading, match)
@@ -118,13 +129,25 @@ def _match_facts(
             "valve_threshold_factor": match.built.threshold_factor,
         },
         "errors": [
-            {"name": f.name, "value": f.value, "standard_error": f.error, "decided": f.decided} for f in match.fitted
+            {
+                "name": f.name,
+                "value": f.value,
+                "standard_error": f.error,
+                "decided": f.decided,
+                "written": f.stands_out,
+                "unit": "m3" if f.kind == "volume" else UNITS[f.kind],
+            }
+            for f in match.fitted
         ],
+        "period_error": {
+            "before": _period_error(expected, reading),
+            "after": _period_error(match.run, reading),
+        },
         "residual_kPa": {"before": match.before_Pa / 1e3, "after": match.residual_Pa / 1e3},
         "diagnosis": [{"where": f.where, "standard_errors": f.errors, "words": f.words} for f in told],
         "cannot_tell": cannot_tell(match, reading),
         "counted_backwards": counted_backwards(expected, reading),
-        "as_built_toml": as_built_toml(robot, match.built),
+        "as_built_toml": _toml(robot, match),
         "cautions": [ESTIMATES, BENCH],
     }
 
@@ -143,17 +166,15 @@ def _stage_facts(robot: Robot, match: Match, stage: int) -> dict[str, Any]:
 def _print(robot: Robot, reading: TraceReading, expected: RingRun, match: Match, told: tuple[Finding, ...]) -> None:
     click.echo(
         f"period {reading.period_s:.4g} s measured over {reading.periods} periods (scatter {reading.period_scatter_s * 1e3:.2g} ms), "
-        f"{expected.period_s:.4g} s as drawn, {match.run.period_s:.4g} s as fitted"
+        f"{_period_words(expected, reading)} as drawn, {_period_words(match.run, reading)} as fitted"
     )
     headers = ("stage", "phase", "drawn", "peak kPa", "drawn", "rise s", "drawn")
     print_table(headers, [_compared(k, reading, expected) for k, _ in reading.stages])
     click.echo(
-        f"\nAs built (gauges followed to {match.residual_Pa / 1e3:.2g} kPa, {match.before_Pa / 1e3:.2g} kPa as drawn):"
+        f"\nAs built (gauges followed to {match.residual_Pa / 1e3:.2g} kPa, {match.before_Pa / 1e3:.2g} kPa as drawn, "
+        "each compared over its own period: the period's error is not in these):"
     )
-    print_table(
-        ("number", "value", "± (1 σ)", "decided"),
-        [_fitted_row(f.name, f.value, f.error, f.decided) for f in match.fitted],
-    )
+    print_table(("number", "value", "± (1 σ)", "unit", "decided", "for the file"), map(_fitted_row, match.fitted))
     click.echo("\nDiagnosis:" if told else f"\n{SOUND}")
     for finding in told:
         click.echo(f"  - {finding.words} ({finding.errors:.0f} standard errors).")
@@ -161,7 +182,7 @@ def _print(robot: Robot, reading: TraceReading, expected: RingRun, match: Match,
     for words in cannot_tell(match, reading):
         click.echo(f"  - {words}")
     click.echo("\nFor the robot file:\n")
-    click.echo(as_built_toml(robot, match.built))
+    click.echo(_toml(robot, match))
     click.echo(f"{ESTIMATES}\n{BENCH}")
 
 
@@ -173,7 +194,26 @@ def _compared(stage: int, reading: TraceReading, expected: RingRun) -> tuple[obj
     return (stage, gauge.phase, drawn % 1.0, gauge.peak_Pa / 1e3, peak / 1e3, gauge.rise_s, rise)
 
 
-def _fitted_row(name: str, value: float, error: float, decided: bool) -> tuple[object, ...]:
-    if name.startswith("volume"):
-        return (name.replace("volume", "extra volume, mL,"), value * 1e6, error * 1e6, decided)
-    return (name, value, error, decided)
+def _fitted_row(item: Fitted) -> tuple[object, ...]:
+    scale = ML if item.kind == "volume" else 1.0
+    kept = "as fitted" if item.stands_out else "as drawn"
+    name = item.name.replace("volume", "extra volume")
+    return (name, item.value / scale, item.error / scale, UNITS[item.kind], item.decided, kept)
+
+
+def _toml(robot: Robot, match: Match) -> str:
+    """The ring for the robot file: what the traces did not decide is as drawn, and is named in a comment."""
+    left = [f.name for f in match.fitted if not f.stands_out]
+    note = f"# not decided (within one standard error of the drawing, or unseen), left as drawn: {', '.join(left)}\n"
+    return (note if left else "") + as_built_toml(robot, decided_build(match))
+
+
+def _period_error(run: RingRun, reading: TraceReading) -> float:
+    """The model's period over the measured one, less 1."""
+    return run.period_s / reading.period_s - 1.0
+
+
+def _period_words(run: RingRun, reading: TraceReading) -> str:
+    if not math.isfinite(run.period_s):
+        return "none"
+    return f"{run.period_s:.4g} s ({100 * _period_error(run, reading):+.1f} %)"

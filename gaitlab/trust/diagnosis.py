@@ -46,8 +46,7 @@ def findings(robot: Robot, wiring: Wiring, reading: TraceReading, match: Match) 
 
 
 def _finding(robot: Robot, item: Fitted, match: Match) -> Finding | None:
-    rest = 1.0 if item.kind in ("opening", "supply flow", "valve threshold") else 0.0
-    away = item.value - rest
+    away = item.away
     worth = WORTH.get(item.kind, VOLUME_SHARE * typical_volume_m3(robot))
     if not item.decided or abs(away) < worth or abs(away) < ERRORS * item.error:
         return None

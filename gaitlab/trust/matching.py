@@ -57,6 +57,7 @@ class Unknown:
 # Priors (standard deviations) chosen by us: ln opening 0.1 (flow ±25 %), leak ln(1 + leak/0.01) 1, volume as a share of a
 # bellows' worth of gas 0.2, ln supply flow 0.2, ln threshold 0.15.
 PRIORS = {"opening": 0.10, "leak": 1.0, "volume": 0.2, "supply flow": 0.2, "valve threshold": 0.15}
+FACTORS = ("opening", "supply flow", "valve threshold")  # kinds that are 1 as drawn; the others are 0
 LEAK_SCALE = 0.01
 QUICK = Settings(loose=2e-3, tight=1e-3, near=2e-2, closed=5e-4)  # chosen by us, see quick_ring
 
@@ -77,14 +78,25 @@ class Fitted:
         """For people: ``opening of stage 3``."""
         return f"{self.kind} of stage {self.stage}" if self.stage else self.kind
 
+    @property
+    def away(self) -> float:
+        """How far the value is from the drawing."""
+        return self.value - (1.0 if self.kind in FACTORS else 0.0)
+
+    @property
+    def stands_out(self) -> bool:
+        """Whether the traces decided it and it is at least one standard error from the drawing: worth writing down."""
+        return self.decided and abs(self.away) >= self.error
+
 
 @dataclass(frozen=True)
 class Match:
     """The fit: the ring as built, each fitted number, and which of them are confounded.
 
     `residual_Pa` is the root mean square of model less measurement over all gauges, `before_Pa` the same for the file's
-    robot; `confounded` are pairs whose errors go together (correlation at least 0.9 either way). `outcome` is matched, or
-    poor_fit where the model cannot follow the gauges.
+    robot. Both compare shapes, each over its own period: an error of the period is not in them. `confounded` are pairs
+    whose errors go together (correlation at least 0.9 either way). `outcome` is matched, or poor_fit where the model
+    cannot follow the gauges.
     """
 
     outcome: str
@@ -137,6 +149,21 @@ def unknowns_of(robot: Robot, reading: TraceReading) -> tuple[Unknown, ...]:
     found = [Unknown(kind, k, PRIORS[kind]) for k, _ in reading.stages for kind in ("opening", "leak", "volume")]
     shared = ["valve threshold"] if isinstance(robot.supply, Syringe) else ["supply flow", "valve threshold"]
     return (*found, *(Unknown(kind, 0, PRIORS[kind]) for kind in shared))
+
+
+def decided_build(match: Match) -> AsBuilt:
+    """The fitted ring with every number that does not stand out put back to the drawing."""
+    out = {(f.kind, f.stage) for f in match.fitted if f.stands_out}
+    stages = tuple(
+        StageBuild(
+            build.opening_factor if ("opening", k) in out else 1.0,
+            build.leak_fraction if ("leak", k) in out else 0.0,
+            build.extra_m3 if ("volume", k) in out else 0.0,
+        )
+        for k, build in enumerate(match.built.stages, start=1)
+    )
+    supply = match.built.supply_factor if ("supply flow", 0) in out else 1.0
+    return AsBuilt(stages, supply, match.built.threshold_factor if ("valve threshold", 0) in out else 1.0)
 
 
 def built_from(robot: Robot, unknowns: Sequence[Unknown], x: FloatArray) -> AsBuilt:

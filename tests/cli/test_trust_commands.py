@@ -228,6 +228,10 @@ def test_match_as_json(matching: None, tmp_path: Path) -> None:
     assert third["resistor_conductance_factor"] < 0.87
     assert facts["as_built"]["supply_flow_factor"] == pytest.approx(0.85, abs=0.02)
     assert {f["where"] for f in facts["diagnosis"]} >= {"opening of stage 3", "supply flow"}
+    third_opening = next(f for f in facts["errors"] if f["name"] == "opening of stage 3")
+    assert third_opening["written"] is True and third_opening["unit"] == "× drawn side or bore"
+    assert abs(facts["period_error"]["after"]) < 0.01 < abs(facts["period_error"]["before"])
+    assert facts["as_built_toml"].startswith("# not decided (within one standard error")
     assert facts["cannot_tell"] and facts["cautions"] and "[[ring.stage]]" in facts["as_built_toml"]
 
 
@@ -240,6 +244,10 @@ def test_match_for_people(matching: None, tmp_path: Path) -> None:
         "clamp the tube",
         "implode",
         "estimates",
+        "× drawn side or bore",
+        "of the open valve",
+        "the period's error is not in these",
+        "left as drawn:",
     ):
         assert words in shown.out
     assert shown.code == 0
@@ -253,6 +261,7 @@ def test_match_of_a_resting_ring_points_to_the_stage(tmp_path: Path) -> None:
     facts = json.loads(shown.out)
     assert (shown.code, facts["outcome"]) == (1, "rests")
     assert "stage 1" in facts["diagnosis"][0] and "resistor blocked" in facts["diagnosis"][0]
+    assert facts["remedy"].startswith(facts["diagnosis"][0] + "; ")
 
 
 @pytest.mark.parametrize("text", ["", "time_s,stage_9_kPa\n" + "1,2\n" * 30, "\x00\x01"])

@@ -33,7 +33,7 @@ from gaitlab.trust.as_built import (
 )
 from gaitlab.trust.as_built_toml import as_built_toml, flow_part_toml
 from gaitlab.trust.diagnosis import cannot_tell, counted_backwards, findings, resting_words
-from gaitlab.trust.matching import matched
+from gaitlab.trust.matching import decided_build, matched
 from gaitlab.trust.trace_csv import read_traces
 from gaitlab.trust.trace_reading import TraceReading, read_rhythm
 from gaitlab.wiring.wiring import Wiring, wiring_from_text
@@ -135,6 +135,27 @@ def test_a_sound_ring_gives_no_findings(tmp_path, robot):
     reading = reading_of(tmp_path, formula_ring(robot, WIRING))
     match = matched(robot, WIRING, reading, solve=formula_ring)
     assert findings(robot, WIRING, reading, match) == ()
+    assert decided_build(match) == AsBuilt(off())
+
+
+def test_only_what_stands_out_goes_into_the_file(tmp_path, robot):
+    """Stage 3 is narrow and the pump weak: they are written as fitted, what is within one standard error as drawn."""
+    match = matched(
+        robot, WIRING, reading_of(tmp_path, formula_ring(built_robot(robot, TRUTH), WIRING)), solve=formula_ring
+    )
+    kept = decided_build(match)
+    assert kept.stages[2].opening_factor == match.built.stages[2].opening_factor != 1.0
+    assert kept.supply_factor == match.built.supply_factor
+    within = [f for f in match.fitted if f.kind == "opening" and abs(f.value - 1.0) < f.error]
+    assert within and all(kept.stages[f.stage - 1].opening_factor == 1.0 for f in within)
+
+
+def test_a_period_error_is_not_in_the_residual(tmp_path, robot):
+    """The same shapes at twice the period: nothing left over, as gauges are compared over their own periods."""
+    reading = reading_of(tmp_path, formula_ring(robot, WIRING))
+    slow = dataclasses.replace(reading, period_s=2 * reading.period_s)
+    match = matched(robot, WIRING, slow, solve=formula_ring)
+    assert match.before_Pa < 300.0
 
 
 def test_a_weak_leg_behind_a_sound_ring_points_to_its_tube(tmp_path, robot):
