@@ -17,6 +17,7 @@ from gaitlab.robot.fields import DEGREE, KILO, MILLI, ML
 from gaitlab.robot.reader import read_robot
 from gaitlab.robot.records import Robot
 from gaitlab.robot.suspicions import greatest_vacuum_Pa
+from gaitlab.trust.cautions import ESTIMATES
 
 POINTS = 13
 CURVE_POINTS = 121
@@ -50,6 +51,7 @@ def command(robot_path: Path, name: str | None, plot: Path | None, force: bool, 
     else:
         for law in laws:
             _print_human(law, facts[law.name])
+        click.echo(f"\n{ESTIMATES}")
 
 
 def chosen_laws(robot: Robot, name: str | None) -> list[BellowsLaw]:

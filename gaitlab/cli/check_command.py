@@ -18,6 +18,7 @@ from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import RobotFile, read_robot
 from gaitlab.robot.records import Robot
 from gaitlab.robot.totals import mass_kg
+from gaitlab.trust.cautions import ESTIMATES
 from gaitlab.trust.tolerances import tolerances_of
 from gaitlab.wiring.space import WiringSpace
 
@@ -42,6 +43,7 @@ def command(robot_path: Path, as_json: bool) -> None:
         print_json(facts)
     else:
         _print_human(facts)
+        click.echo(f"\n{ESTIMATES}")
 
 
 def summary(file: RobotFile) -> dict[str, Any]:

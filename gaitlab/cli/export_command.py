@@ -22,6 +22,7 @@ from gaitlab.errors import InputError, must
 from gaitlab.gait.outcomes import WALKED
 from gaitlab.robot.reader import read_robot
 from gaitlab.robot.records import Robot
+from gaitlab.trust.cautions import DISTANCES, ESTIMATES
 
 CSV_HZ = 100.0  # rows a second (chosen by us)
 
@@ -70,6 +71,7 @@ def command(
         print_json(facts)
     else:
         print_facts([(key.replace("_", " "), value) for key, value in facts.items()])
+        click.echo("\n" + (ESTIMATES if csv_path is None else f"{DISTANCES}\n{ESTIMATES}"))
 
 
 def _write_urdf(robot: Robot, path: Path, *, force: bool) -> dict[str, Any]:

@@ -20,6 +20,7 @@ from gaitlab.ring.working import working_vacuum
 from gaitlab.robot.fields import KILO
 from gaitlab.robot.reader import read_robot
 from gaitlab.robot.records import Robot
+from gaitlab.trust.cautions import ESTIMATES
 
 
 @click.command("inverter")
@@ -58,6 +59,7 @@ def command(
         print_json(facts)
     else:
         _print_human(stage, facts)
+        click.echo(f"\n{ESTIMATES}")
 
 
 def _curve(robot: Robot, stage: int, supply_kPa: float | None) -> InverterCurve:

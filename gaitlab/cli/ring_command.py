@@ -15,6 +15,7 @@ from gaitlab.errors import InputError, must
 from gaitlab.ring.verdict import OSCILLATES
 from gaitlab.robot.fields import KILO
 from gaitlab.robot.reader import read_robot
+from gaitlab.trust.cautions import ESTIMATES
 
 if TYPE_CHECKING:
     from gaitlab.ring.waves import RingRun
@@ -182,6 +183,7 @@ def _print_human(run: RingRun, facts: dict[str, Any]) -> None:
     rows += [("note", note) for note in facts["notes"]]
     print_facts(rows)
     print_table(STAGE_HEADERS, stage_rows(run))
+    click.echo(f"\n{ESTIMATES}")
 
 
 def _starts_text(starts: list[dict[str, Any]]) -> str:

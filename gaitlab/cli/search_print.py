@@ -13,9 +13,9 @@ from gaitlab.search.ranking import Ranked
 from gaitlab.search.ranking_table import SMOOTH_WORDS
 from gaitlab.search.run import SearchTask
 from gaitlab.search.summary import DONE, TIE_RULE, SearchSummary
+from gaitlab.trust.cautions import DISTANCES
 
 SHOWN = 10  # places in the table; ranking.csv has all
-CAUTION = "A distance from a physics engine is an estimate, good to 20–30 %: trust the order more than the length."
 
 
 def print_search(summary: SearchSummary, task: SearchTask) -> None:
@@ -39,7 +39,7 @@ def print_search(summary: SearchSummary, task: SearchTask) -> None:
     )
     if summary.checked is not None:
         print_checked(summary.checked, task.objective)
-    click.echo(CAUTION)
+    click.echo(DISTANCES)
 
 
 def _print_places(summary: SearchSummary, task: SearchTask) -> None:

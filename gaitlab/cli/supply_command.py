@@ -17,6 +17,7 @@ from gaitlab.cli.ring_facts import margin_notes, wiring_or_even
 from gaitlab.robot.circuit import Pump, PumpTable, Syringe
 from gaitlab.robot.fields import KILO, MILLI, MINUTE_LITRE
 from gaitlab.robot.reader import read_robot
+from gaitlab.trust.cautions import BENCH, ESTIMATES
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
@@ -121,19 +122,16 @@ def _print_human(facts: dict[str, Any]) -> None:
         rows.append(("smallest pump", _smallest_words(facts)))
     rows += [("note", note) for note in facts["notes"]]
     print_facts(rows)
+    click.echo(f"\n{ESTIMATES}\n{BENCH}")
 
 
 def _print_starved(facts: dict[str, Any], dead_end_Pa: float) -> None:
     """What a supply that does not carry the ring leaves, and the pump that would."""
-    if "periods_per_stroke" in facts:
-        return
-    print_facts(
-        [
-            ("supply vacuum", f"{facts['working_vacuum_kPa']:.4g} kPa mean, {facts['least_vacuum_kPa']:.4g} kPa least"),
-            ("dead end", f"{dead_end_Pa / KILO:.4g} kPa"),
-            ("smallest pump", _smallest_words(facts)),
-        ]
-    )
+    if "periods_per_stroke" not in facts:
+        vacuum = f"{facts['working_vacuum_kPa']:.4g} kPa mean, {facts['least_vacuum_kPa']:.4g} kPa least"
+        rows = [("supply vacuum", vacuum), ("dead end", f"{dead_end_Pa / KILO:.4g} kPa")]
+        print_facts([*rows, ("smallest pump", _smallest_words(facts))])
+    click.echo(f"\n{ESTIMATES}\n{BENCH}\n")
 
 
 def _smallest_words(facts: dict[str, Any]) -> str:

@@ -25,6 +25,7 @@ from gaitlab.errors import InputError, RunFolderError, must
 from gaitlab.gait.outcomes import WALKED
 from gaitlab.robot.checks import require_odd_ring
 from gaitlab.robot.reader import read_robot
+from gaitlab.trust.cautions import DISTANCES, ESTIMATES
 
 if TYPE_CHECKING:
     from gaitlab.gait.records import Trace, Walk
@@ -174,3 +175,4 @@ def _print_people(facts: dict[str, Any]) -> None:
     print_facts([("wiring", " ".join(f"{i}={s}" for i, s in facts["wiring"].items())), *walk_rows(facts)])
     click.echo()
     print_table(["foot", "duty", "stance (phases)"], footfall_rows(facts))
+    click.echo(f"\n{DISTANCES}\n{ESTIMATES}")
