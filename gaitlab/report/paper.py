@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cache
@@ -19,6 +20,9 @@ from gaitlab.report.style import INK, MM_PER_INCH, MUTED, RULE
 
 MM_PER_POINT = MM_PER_INCH / 72.0
 LINE_SPACING = 1.32
+LEAST_PT = 4.0  # of type that is set smaller to fit; chosen by us
+ROUNDING = 1e-9
+CELL_EDGES_MM = 1.8  # of a table's cell, left and right of its text together
 _GAUGE_SIZE = 200  # size at which the font is measured, large so that rounding does not matter
 
 
@@ -43,6 +47,15 @@ def broken(words: str, width_mm: float, size_pt: float, *, bold: bool = False) -
         else:
             lines += _cut(word, width_mm, size_pt, bold)
     return lines or [""]
+
+
+def shortened(words: str, width_mm: float, size_pt: float, *, bold: bool = False) -> str:
+    """The text with as much of its middle left out as makes it no wider than `width_mm`: names differ at their ends."""
+    for left in range(len(words), 0, -1):
+        text = words if left == len(words) else f"{words[: (left + 1) // 2]}…{words[len(words) - left // 2 :]}"
+        if text_width_mm(text, size_pt, bold=bold) <= width_mm * (1.0 + ROUNDING):
+            return text
+    return "…"
 
 
 def broken_label(words: str, *, width_mm: float, size_pt: float) -> str:
@@ -90,9 +103,13 @@ class Paper:
         bold: bool = False,
         colour: str = INK,
         align: str = "left",
+        width: float = math.inf,
     ) -> None:
-        """One line of text whose baseline is at `y`."""
+        """One line of text whose baseline is at `y`; what would be wider than `width` is set smaller, then shortened."""
         weight = "bold" if bold else "normal"
+        if (wide := text_width_mm(words, self.type_scale * size, bold=bold)) > width:
+            size = max(size * width / wide, min(size, LEAST_PT / self.type_scale))
+            words = shortened(words, width, self.type_scale * size, bold=bold)
         self.ground.text(
             x, y, words, fontsize=self.type_scale * size, fontweight=weight, color=colour, ha=align, va="baseline"
         )
@@ -146,13 +163,14 @@ class Paper:
     ) -> float:
         """A ruled table, first column bold, heads small and muted above; gives back the y below it."""
         stops = [x + sum(widths[:k]) for k in range(len(widths))]
-        for stop, head in zip(stops, heads, strict=True):
-            self.line(stop + 1.0, y + 3.2, head, size=6.8, colour=MUTED)
+        for stop, head, width in zip(stops, heads, widths, strict=True):
+            self.line(stop + 1.0, y + 3.2, head, size=6.8, colour=MUTED, width=width - CELL_EDGES_MM)
         y += 4.6
         self.rule(x, y, sum(widths), colour=MUTED)
         for row in rows:
-            for column, (stop, cell) in enumerate(zip(stops, row, strict=True)):
-                self.line(stop + 1.0, y + 0.68 * row_mm, cell, size=size, bold=column < 2)
+            for column, (stop, cell, width) in enumerate(zip(stops, row, widths, strict=True)):
+                base = y + 0.68 * row_mm
+                self.line(stop + 1.0, base, cell, size=size, bold=column < 2, width=width - CELL_EDGES_MM)
             y += row_mm
             self.rule(x, y, sum(widths))
         return y

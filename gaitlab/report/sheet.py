@@ -10,7 +10,7 @@ from matplotlib.figure import Figure
 
 from gaitlab.errors import InputError, must
 from gaitlab.report.cautions import CAUTIONS, ESTIMATES
-from gaitlab.report.paper import Paper, text_width_mm
+from gaitlab.report.paper import Paper
 from gaitlab.report.run_folder import SavedRun
 from gaitlab.report.sheet_content import SheetContent, TubeRow, row_text, sheet_content
 from gaitlab.report.style import BLUE, INK, MUTED, SERIES, bare, figure_bytes, styled
@@ -75,10 +75,8 @@ def _draw_head(paper: Paper, content: SheetContent) -> float:
     paper.box(0.0, 0.0, A4_MM[0], 24.0, fill="#e9eef2", edge="none")
     paper.line(LEFT, 9.0, "BENCH SHEET", size=8.0, bold=True, colour=MUTED)
     paper.line(LEFT + WIDTH, 9.0, "built by ____________  on ____________", size=7.5, colour=MUTED, align="right")
-    size = min(16.0, 16.0 * WIDTH / max(text_width_mm(content.title, 16.0, bold=True), 1.0))
-    paper.line(LEFT, 16.2, content.title, size=size, bold=True)
-    small = min(7.2, 7.2 * WIDTH / max(text_width_mm(content.subtitle, 7.2), 1.0))
-    paper.line(LEFT, 21.2, content.subtitle, size=small, colour=MUTED)
+    paper.line(LEFT, 16.2, content.title, size=16.0, bold=True, width=WIDTH)
+    paper.line(LEFT, 21.2, content.subtitle, size=7.2, colour=MUTED, width=WIDTH)
     return 24.0
 
 
@@ -127,7 +125,7 @@ def _draw_middle(paper: Paper, run: SavedRun, content: SheetContent, y: float) -
         below = paper.paragraph(RIGHT + 17.0, start, value, width=HALF - 17.0, size=7.6) + 0.7
         paper.paragraph(RIGHT, start, name, width=17.0, size=7.6, bold=True)
     chart = max(below + 3.5, y + 30.0)
-    _draw_gauges(bare(paper.inset(RIGHT + 10.0, chart, HALF - 11.0, max(y + 55.0 - chart - 4.0, 17.0))), run)
+    _draw_gauges(bare(paper.inset(RIGHT + 10.0, chart, HALF - 12.5, max(y + 55.0 - chart - 4.0, 17.0))), run)
     return max(y + 57.0, chart + 24.0)
 
 

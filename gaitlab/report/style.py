@@ -59,6 +59,7 @@ RC: Any = {
     "legend.fontsize": 8,
     "hatch.linewidth": 0.8,
     "text.parse_math": False,  # a dollar sign in a robot's name is a dollar sign
+    "text.hinting": "none",  # letters keep their drawn widths at every resolution, so that measured lines fit
     "svg.hashsalt": "gaitlab",
     "svg.fonttype": "none",
     "pdf.fonttype": 42,

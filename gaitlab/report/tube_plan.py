@@ -17,6 +17,8 @@ MM = 1e3
 PORT_RADIUS = 0.085  # of the plan's longest side
 CORNERS = 40
 CROWDED = 8  # more inlets than this are named in small upright letters
+NAME_LETTERS = 10  # of a name in the plan
+LABEL_LETTERS = 16  # of all names at one place
 
 
 def draw_tube_plan(ax: Axes, robot: Robot, wiring: Wiring) -> None:
@@ -55,7 +57,22 @@ def _draw_inlets(ax: Axes, inlets: dict[str, np.ndarray], reach: float) -> None:
 
 
 def _listed(names: list[str]) -> str:
-    return ", ".join(names if len(names) <= 3 else [*names[:2], f"+{len(names) - 2}"])
+    """As many of the names as `LABEL_LETTERS` hold, at least one, and how many more there are."""
+    shown = [_short(name) for name in names]
+    for left_out in range(len(names)):
+        text = ", ".join(shown[: len(names) - left_out] + ([f"+{left_out}"] if left_out else []))
+        if len(text) <= LABEL_LETTERS:
+            break
+    return text
+
+
+def _short(name: str) -> str:
+    """The table has the whole name.
+
+    >>> _short("front_left"), _short("front_left_bellows")
+    ('front_left', 'fron…llows')
+    """
+    return name if len(name) <= NAME_LETTERS else f"{name[:4]}…{name[4 - NAME_LETTERS + 1 :]}"
 
 
 def _draw_blocks(ax: Axes, robot: Robot) -> None:

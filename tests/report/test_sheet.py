@@ -3,26 +3,41 @@
 from __future__ import annotations
 
 import dataclasses
+import itertools
 import json
 import math
 import re
 import subprocess
+import tomllib
 from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 import pytest
 from click.testing import CliRunner
+from matplotlib.figure import Figure
+from matplotlib.text import Text
+from matplotlib.transforms import Bbox
 
 from gaitlab.cli.main import cli
+from gaitlab.cli.starter import starter_text
 from gaitlab.errors import InputError
-from gaitlab.report.paper import broken, text_width_mm
+from gaitlab.report.paper import Paper, broken, shortened, text_width_mm
 from gaitlab.report.run_folder import SavedRun, read_run
-from gaitlab.report.sheet import A4_MM, bench_sheet, sheet_files
+from gaitlab.report.sheet import A4_MM, BOTTOM, LEFT, WIDTH, bench_sheet, sheet_files
 from gaitlab.report.sheet_content import sheet_content, tube_rows
+from gaitlab.report.style import MM_PER_INCH, styled
 from gaitlab.report.words import course_text, number, reversed_text, speed_estimate
+from gaitlab.ring.sequence import ideal_run
 from gaitlab.robot.parts import Unit
+from gaitlab.robot.reader import read_robot, robot_from_document
+from gaitlab.robot.records import Robot
 from gaitlab.wiring.wiring import Wiring
 from tests.report import synthetic
+
+ROBOTS = Path(__file__).resolve().parents[2] / "robots"
+TOLERANCE_MM = 0.05  # a hairline; chosen by us
+DPI = (72, 150)  # of the PDF and of the PNG
 
 
 @pytest.fixture(scope="module")
@@ -124,15 +139,90 @@ def test_thirty_tubes_fit_as_well(run: SavedRun, tmp_path: Path) -> None:
     assert "Open to atmosphere, no tube: leg30." in text
 
 
-@pytest.mark.parametrize("change", [lambda run: run, _crowded], ids=["five", "thirty-one"])
-def test_everything_stays_on_the_paper(run: SavedRun, change: Callable[[SavedRun], SavedRun]) -> None:
-    figure = bench_sheet(change(run))
-    figure.draw_without_rendering()
-    renderer = figure.canvas.get_renderer()
-    for text in figure.axes[0].texts:
-        box = text.get_window_extent(renderer).transformed(figure.transFigure.inverted())
-        assert min(box.x0, box.y0) > 0.0 and max(box.x1, box.y1) < 1.0, text.get_text()
+def _of_robot(run: SavedRun, robot: Robot) -> SavedRun:
+    """The same run's figures on another robot, wired in order, its ring an ideal one."""
+    inlets, stages = robot.inlets(), robot.ring.stages
+    wiring = Wiring.of({inlet: k % stages + 1 for k, inlet in enumerate(inlets)})
+    best = dataclasses.replace(run.best, wiring=wiring, reversed_wiring=wiring.reversed(stages))
+    ring = ideal_run(robot, wiring, "natural", 1.0, 50e3)
+    return dataclasses.replace(run, robot=robot, ranking=(best,), ring=ring)
+
+
+def _long(robot: Robot) -> Robot:
+    """The same robot with names as long as a file may give them."""
+
+    def unit(old: Unit) -> Unit:
+        other = None if old.opposed_inlet is None else old.opposed_inlet.ljust(64, "w")
+        return dataclasses.replace(old, inlet=old.inlet.ljust(64, "W"), opposed_inlet=other)
+
+    def chain(old: Any) -> Any:
+        return dataclasses.replace(old, units=tuple(unit(u) for u in old.units))
+
+    legs, spines = tuple(map(chain, robot.body.legs)), tuple(map(chain, robot.body.spines))
+    return dataclasses.replace(robot, name="W" * 64, body=dataclasses.replace(robot.body, legs=legs, spines=spines))
+
+
+def _starter(legs: int) -> Robot:
+    return robot_from_document(tomllib.loads(starter_text(f"starter{legs}", legs)))
+
+
+SHEETS: dict[str, Callable[[SavedRun], SavedRun]] = {
+    "five": lambda run: run,
+    "thirty-one": _crowded,
+    **{p.stem: lambda run, p=p: _of_robot(run, read_robot(p).robot) for p in sorted(ROBOTS.glob("*.toml"))},
+    **{f"{p.stem}, long names": lambda run, p=p: _of_robot(run, _long(read_robot(p).robot)) for p in sorted(ROBOTS.glob("*.toml"))},
+    **{f"starter of {n}": lambda run, n=n: _of_robot(run, _starter(n)) for n in (3, 7, 15)},
+    "starter of 15, long names": lambda run: _of_robot(run, _long(_starter(15))),
+}  # fmt: skip
+
+
+def _extent_mm(text: Text) -> Bbox:
+    """Where a text is on the page [mm from the left, from the top] as the figure's own renderer sets it."""
+    figure = text.get_figure()
+    assert isinstance(figure, Figure)
+    box = text.get_window_extent(figure.canvas.get_renderer())  # type: ignore[attr-defined]
+    mm, height = MM_PER_INCH / figure.dpi, figure.bbox.height
+    return Bbox.from_extents(box.x0 * mm, (height - box.y1) * mm, box.x1 * mm, (height - box.y0) * mm)
+
+
+@pytest.mark.parametrize("name", SHEETS)
+def test_no_text_leaves_its_box_its_column_or_the_margins(
+    run: SavedRun, monkeypatch: pytest.MonkeyPatch, name: str
+) -> None:
+    columns: list[tuple[Text, float]] = []
+    set_paragraph = Paper.paragraph
+
+    def watched(paper: Paper, x: float, y: float, words: str, *, width: float, **look: Any) -> float:
+        before = len(paper.ground.texts)
+        below = set_paragraph(paper, x, y, words, width=width, **look)
+        columns.extend((text, x + width) for text in paper.ground.texts[before:])
+        return below
+
+    monkeypatch.setattr(Paper, "paragraph", watched)
+    figure = bench_sheet(SHEETS[name](run))
     assert figure.get_size_inches() * 25.4 == pytest.approx(A4_MM)
+    for dpi in DPI:
+        with styled():
+            figure.set_dpi(dpi)
+            figure.draw_without_rendering()
+            texts = {text: _extent_mm(text) for text in figure.findobj(Text) if _is_seen(text)}
+        _assert_in_place(texts, {text: right for text, right in columns if text in texts}, figure)
+
+
+def _assert_in_place(texts: dict[Text, Bbox], columns: dict[Text, float], figure: Figure) -> None:
+    assert len(columns) > 30
+    for text, box in texts.items():
+        assert box.x0 >= LEFT - TOLERANCE_MM and box.x1 <= LEFT + WIDTH + TOLERANCE_MM, text.get_text()
+        assert box.y0 > 0.0 and box.y1 < BOTTOM, text.get_text()
+    for text, right in columns.items():
+        assert texts[text].x1 <= right + TOLERANCE_MM, text.get_text()
+    ground = [(text, box) for text, box in texts.items() if text.axes is figure.axes[0]]
+    for (one, a), (other, b) in itertools.combinations(ground, 2):
+        assert not a.padded(-0.2).overlaps(b.padded(-0.2)), (one.get_text(), other.get_text())
+
+
+def _is_seen(text: Text) -> bool:
+    return text.get_visible() and bool(text.get_text().strip())
 
 
 @pytest.mark.parametrize(
@@ -188,6 +278,14 @@ def test_text_is_broken_by_measured_width() -> None:
     assert " ".join(lines).split() == ("the quick brown fox jumps over the lazy dog " * 3).split()
     assert max(text_width_mm(line, 8.0) for line in lines) <= 40.0
     assert len(broken("x" * 300, 40.0, 8.0)) > 5
+
+
+def test_a_line_that_must_fit_is_shortened_in_the_middle() -> None:
+    name = "front_left_" + 40 * "very_" + "long_bellows_7"
+    short = shortened(name, 30.0, 4.0)
+    assert text_width_mm(short, 4.0) <= 30.0 < text_width_mm(short + "x", 4.0)
+    assert short.startswith("front_left_") and short.endswith("ellows_7") and "…" in short
+    assert shortened("leg1", 30.0, 4.0) == "leg1"
 
 
 @pytest.mark.parametrize(("value", "text"), [(-0.04, "0.0"), (math.inf, "–"), (12.35, "12.3"), (-3.0, "−3.0")])
