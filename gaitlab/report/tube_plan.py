@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from typing import Any
 
 import numpy as np
@@ -17,6 +18,7 @@ MM = 1e3
 PORT_RADIUS = 0.085  # of the plan's longest side
 CORNERS = 40
 CROWDED = 8  # more inlets than this are named in small upright letters
+LEVEL_LETTERS = 7  # and those with a longer name
 NAME_LETTERS = 10  # of a name in the plan
 LABEL_LETTERS = 16  # of all names at one place
 
@@ -38,15 +40,15 @@ def draw_tube_plan(ax: Axes, robot: Robot, wiring: Wiring) -> None:
     ax.set_aspect("equal")
     ax.margins(0.06)
     low, high = ax.get_ylim()
-    ax.set_ylim(low - (0.2 if len(inlets) > CROWDED else 0.08) * reach, high)  # room for the names
+    ax.set_ylim(low - (0.2 if _crowded(inlets) else 0.08) * reach, high)  # room for the names
     ax.set_xlabel("forward x (mm)", fontsize=7)
     ax.set_ylabel("left y (mm)", fontsize=7)
     ax.tick_params(labelsize=6.5, length=2)
 
 
 def _draw_inlets(ax: Axes, inlets: dict[str, np.ndarray], reach: float) -> None:
-    """Dots with names below; names that share a place share a line, and many stand upright."""
-    crowded = len(inlets) > CROWDED
+    """Dots with names below; names that share a place share a line, and many or long ones stand upright."""
+    crowded = _crowded(inlets)
     places: dict[tuple[float, float], list[str]] = {}
     for inlet, place in inlets.items():
         places.setdefault((round(float(place[0]), 1), round(float(place[1]), 1)), []).append(inlet)
@@ -54,6 +56,11 @@ def _draw_inlets(ax: Axes, inlets: dict[str, np.ndarray], reach: float) -> None:
         ax.plot(x, y, marker="o", ms=3.5 if crowded else 5.0, mfc=BLUE, mec=INK, mew=0.6)
         look: dict[str, Any] = {"fontsize": 5.5, "rotation": 90} if crowded else {"fontsize": 7.5}
         ax.text(x, y - 0.03 * reach, _listed(names), ha="center", va="top", fontweight="bold", color=INK, **look)
+
+
+def _crowded(inlets: Iterable[str]) -> bool:
+    names = list(inlets)
+    return len(names) > CROWDED or any(len(name) > LEVEL_LETTERS for name in names)
 
 
 def _listed(names: list[str]) -> str:

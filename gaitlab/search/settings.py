@@ -7,9 +7,8 @@ from dataclasses import asdict, dataclass, replace
 from functools import cached_property
 
 SETTLED = "settled"
-SHORT_PERIODS = (
-    2  # the second period alone ranked 720 wirings of one body as five periods did; checked by the rank correlation
-)
+# Of a screening walk: `tests/benchmarks/search_cost.py screening` prints how well each of the first periods ranks; chosen by us.
+SHORT_PERIODS = 2
 
 
 @dataclass(frozen=True)

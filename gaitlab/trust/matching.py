@@ -110,7 +110,7 @@ class Match:
 
 
 def quick_ring(robot: Robot, wiring: Wiring) -> RingRun:
-    """The ring solved as closely as a fit to gauges needs: the period to 0.1 %, at half the cost."""
+    """The ring solved as closely as a fit to gauges needs: the period to 0.1 %."""
     return ring_run(robot, wiring, settings=QUICK)
 
 
