@@ -153,7 +153,7 @@ def _row(w: WiringSpread, *, alone: bool) -> tuple[object, ...]:
     s = w.summary
     travel = [q * 1e3 for q in (s.travel_m.p05, s.travel_m.p50, s.travel_m.p95)]
     speed = [q * 1e3 for q in (s.speed_m_s.p05, s.speed_m_s.p50, s.speed_m_s.p95)]
-    forward, best, fails, walks = (100 * c.share for c in (s.forward, s.best, s.ring_fails, s.walks))
+    forward, best, fails, walks = (round(100 * c.share, 1) for c in (s.forward, s.best, s.ring_fails, s.walks))
     return (w.wiring.text(), *travel, *speed, forward, None if alone else best, fails, walks)
 
 
@@ -183,7 +183,8 @@ def _print_shares(found: Spread) -> None:
         return
     click.echo("\nWhat the best wiring's result hangs on: first-order share of its variance, 90 % interval")
     print_table(
-        ("number", "share %", "from", "to"), [(s.name, *(100 * x for x in (s.share, s.low, s.high))) for s in shares]
+        ("number", "share %", "from", "to"),
+        [(s.name, *(round(100 * x, 1) for x in (s.share, s.low, s.high))) for s in shares],
     )
     if shares[0].share > 0:
         click.echo(f"Measure first at the bench: {shares[0].name}.")

@@ -48,10 +48,10 @@ def walk_rows(facts: dict[str, Any]) -> list[tuple[str, object]]:
     return [
         ("outcome", facts["outcome"]),
         ("period", f"{_text(facts['period_s'], 4)} s"),
-        ("travel", f"{_text(facts['travel_mm_per_period'])} ± {_text(facts['travel_scatter_mm'], 2)} mm per period"),
+        ("travel", f"{_text(facts['travel_mm_per_period'])} ± {hundredths(facts['travel_scatter_mm'])} mm per period"),
         ("speed", f"{_text(facts['speed_mm_s'])} mm/s, {_text(facts['speed_body_lengths_s'], 2)} body lengths/s"),
-        ("drift", f"{_text(facts['drift_mm_per_period'])} mm per period to the left"),
-        ("turn", f"{_text(facts['turn_deg_per_period'])}° per period to the left"),
+        ("drift", f"{hundredths(facts['drift_mm_per_period'])} mm per period to the left"),
+        ("turn", f"{hundredths(facts['turn_deg_per_period'])}° per period to the left"),
         ("slip", f"{_text(facts['slip'], 2)} times the travel"),
         (
             "wave",
@@ -63,6 +63,15 @@ def walk_rows(facts: dict[str, Any]) -> list[tuple[str, object]]:
         ("air", f"{_text(facts['air_mg_per_m'], 2)} mg per metre"),
         ("engine", f"{facts['engine']}, step {_text(facts['step_s'] * 1e3, 4)} ms"),
     ]
+
+
+def hundredths(value: float) -> str:
+    """To 0.01, a dash for what is not known: more digits of a drift in mm or a turn in degrees are the engine's noise.
+
+    >>> hundredths(-0.0012), hundredths(3.14159), hundredths(float("nan"))
+    ('0.00', '3.14', '–')
+    """
+    return f"{round(value, 2) + 0.0:.2f}" if math.isfinite(value) else "–"
 
 
 def _text(value: float, digits: int = 3) -> str:

@@ -66,6 +66,7 @@ def test_people_get_a_table_that_names_the_smooth_waves(search: Any) -> None:
     assert done.code == 0
     assert "24 distinct" in done.out and "smooth wave, head to tail" in done.out and "tied" in done.out
     assert "nan" not in done.out
+    assert " 0.57 " in done.out and "0.573" not in done.out  # every made-up walk turns by 0.01 rad
 
 
 def test_every_wiring_has_one_fate(search: Any, tmp_path: Path) -> None:

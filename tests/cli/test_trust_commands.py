@@ -180,6 +180,22 @@ def test_compare_as_json_says_which_direction(run: Any) -> None:
     assert pair["speed_estimate"]["speed_mm_s"] == pytest.approx([12.0, 16.0, 20.0])
 
 
+def test_people_get_no_digits_that_mean_nothing(run: Any) -> None:
+    """Drift to 0.01 mm and turn to 0.01° (JSON keeps all), chances to 0.1 %."""
+
+    def crooked(job: Job) -> Evaluation:
+        walk = dataclasses.replace(by_formula(job).walk, drift_m=1.23456e-4, turn_rad=0.0012345)
+        falls = job.key.split()[0] in ("0", "3", "6")  # three draws
+        return Evaluation(failed_walk(job, "fell_over", "") if falls else walk, 0.0)
+
+    shown = run("compare", ROW5, "--wiring", FORWARD, "--draws", "0", evaluating=crooked).out
+    assert " 0.12 " in shown and " 0.07 " in shown and "0.1235" not in shown and "0.0707" not in shown
+    facts = json.loads(run("compare", ROW5, "--wiring", FORWARD, "--draws", "0", "--json", evaluating=crooked).out)
+    assert facts["compared"][0]["drift_mm_per_period"] == pytest.approx(0.123456)
+    told = run("spread", ROW5, "--wiring", FORWARD, "--draws", "16", evaluating=crooked).out
+    assert " 81.2" in told and "81.25" not in told  # 13 of 16
+
+
 def test_compare_for_people(run: Any) -> None:
     shown = run("compare", ROW5, "--wiring", BACKWARD, "--draws", "32")
     assert shown.code == 0

@@ -3,11 +3,16 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
 
+from gaitlab.cli.walk_facts import walk_facts, walk_rows
 from gaitlab.gait.trace_file import read_trace
+from gaitlab.search.evaluate import Job, failed_walk
+from gaitlab.search.settings import WalkSettings
+from gaitlab.wiring.wiring import wiring_from_text
 from tests.cli.commands import gaitlab
 
 ROW5 = str(Path(__file__).resolve().parents[2] / "robots" / "tray_row5.toml")
@@ -39,6 +44,18 @@ def test_people_get_a_table_without_nan() -> None:
     assert done.code == 0
     assert "travel" in done.out and "duty" in done.out
     assert "nan" not in done.out
+
+
+def test_drift_turn_and_scatter_are_told_to_a_hundredth() -> None:
+    """The engine's noise is not printed as if it were measured; JSON keeps what was computed."""
+    job = Job("", wiring_from_text(WIRING, tuple("abcde"), 5), WalkSettings(), "")
+    walk = replace(
+        failed_walk(job, "walked", ""), travel_m=0.0082, travel_scatter_m=1.2e-7, drift_m=-1.23e-6, turn_rad=0.017238
+    )
+    rows = dict(walk_rows(walk_facts(walk)))
+    assert walk_facts(walk)["drift_mm_per_period"] == pytest.approx(-0.00123)
+    assert rows["drift"] == "0.00 mm per period to the left" and rows["turn"] == "0.99° per period to the left"
+    assert str(rows["travel"]).endswith("± 0.00 mm per period")
 
 
 def test_save_writes_the_motion_and_does_not_overwrite_it(tmp_path: Path) -> None:
