@@ -1,28 +1,13 @@
-"""Rubber by its hardness, and how a clamped round membrane of it bulges."""
+"""How a clamped round membrane of rubber bulges."""
 
 from __future__ import annotations
 
 import math
 
-from gaitlab.errors import InputError, must
-
 # w0 = 0.662 a (q a/(E h))^(1/3), clamped round membrane, ν near one half (Timoshenko & Woinowsky-Krieger, Theory of
 # Plates and Shells; quoted from memory). Reproduces both membranes of Grover et al., Lab Chip 8(6) 913 (2008).
 MEMBRANE_FACTOR = 0.662
 RUBBER_POISSON = 0.5  # rubber hardly changes its volume
-
-
-def youngs_from_shore_Pa(shore_A: float) -> float:
-    """Young's modulus [Pa] of rubber from Shore A hardness: E = 0.0981 (56 + 7.62336 S)/(0.137505 (254 − 2.54 S)) MPa.
-
-    Gent, Rubber Chemistry and Technology 31(4) 896 (1958). Good to about ±20 % between 20 and 80 Shore A.
-
-    >>> round(youngs_from_shore_Pa(30.0) / 1e6, 2)
-    1.14
-    """
-    if not 0.0 < shore_A < 100.0:
-        raise InputError(must("shore_A", "above 0 and below 100", shore_A, "read the data sheet of the rubber"))
-    return 1e6 * 0.0981 * (56.0 + 7.62336 * shore_A) / (0.137505 * (254.0 - 2.54 * shore_A))
 
 
 def membrane_deflection_m(pressure_Pa: float, *, radius_m: float, thickness_m: float, youngs_Pa: float) -> float:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from gaitlab.air.elastomer import lift_pressure_Pa, youngs_from_shore_Pa
+from gaitlab.air.elastomer import lift_pressure_Pa
 from gaitlab.air.gas import Gas
 from gaitlab.air.iso import equivalent_area_m2
 from gaitlab.air.restrictor import equivalent_square
@@ -10,6 +10,7 @@ from gaitlab.air.section import section_of
 from gaitlab.errors import InputError, must
 from gaitlab.robot.circuit import BenchRestrictor, FlowPart, IsoPart, Valve, ValveGeometry
 from gaitlab.robot.fields import MILLI
+from gaitlab.robot.rubber import youngs_from_shore_Pa
 
 STANDARD_Pa = 101_325.0
 # Mean gas pressure left between membrane and seat, as a share of atmosphere: 0 for a perfectly wetting contact that the

@@ -9,20 +9,9 @@ import math
 
 from gaitlab.errors import InputError, must
 from gaitlab.robot.parts import BellowsGeometry
+from gaitlab.robot.rubber import youngs_from_shore_Pa
 
 POISSON_RUBBER = 0.49  # nearly incompressible silicone: common practice, no source
-
-
-def youngs_from_shore_A(shore_A: float) -> float:
-    """Young's modulus [Pa] of a rubber of hardness `shore_A`: E = 0.0981 (56 + 7.62336 S)/(0.137505 (254 − 2.54 S)) MPa.
-
-    Source: A. N. Gent, On the relation between indentation hardness and Young's modulus (1958), coefficients from memory.
-    Trusted from 20 to 80 Shore A.
-
-    >>> round(youngs_from_shore_A(30) / 1e6, 2)
-    1.14
-    """
-    return 0.0981e6 * (56.0 + 7.62336 * shore_A) / (0.137505 * (254.0 - 2.54 * shore_A))
 
 
 def mean_diameter(geometry: BellowsGeometry) -> float:
@@ -43,7 +32,7 @@ def youngs_modulus(geometry: BellowsGeometry) -> float:
     if geometry.youngs_Pa is not None:
         return geometry.youngs_Pa
     if geometry.shore_A is not None:
-        return youngs_from_shore_A(geometry.shore_A)
+        return youngs_from_shore_Pa(geometry.shore_A)
     raise InputError(must("geometry", "given one of youngs_MPa, shore_A and spring_rate_N_mm", "none of them"))
 
 

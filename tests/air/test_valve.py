@@ -10,12 +10,13 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from gaitlab.air.elastomer import lift_pressure_Pa, membrane_deflection_m, youngs_from_shore_Pa
+from gaitlab.air.elastomer import lift_pressure_Pa, membrane_deflection_m
 from gaitlab.air.valve import ValveBank, conductance_share, opening_target, threshold_Pa, valve_numbers
 from gaitlab.air.valve_fit import fit_flow_curve, fit_sealing
 from gaitlab.air.valve_geometry import curtain_lift_m, full_lift_m, valve_warnings
 from gaitlab.errors import InputError
 from gaitlab.robot.circuit import BenchRestrictor, IsoPart, SquareDuct, Valve, ValveGeometry
+from gaitlab.robot.rubber import youngs_from_shore_Pa
 
 OPEN = SquareDuct(1.2e-3, 6e-3)
 VALVE = Valve(16e3, 6e3, 0.15, OPEN, leak_fraction=1e-3, hysteresis_Pa=2e3, travel_s=0.008)
@@ -181,18 +182,6 @@ def test_lift_pressure_is_bending_then_stretching() -> None:
     # Large lift: the membrane formula.
     thin = shape | {"thickness_m": 10e-6}
     assert membrane_deflection_m(lift_pressure_Pa(1e-3, **thin), **thin) == pytest.approx(1e-3, rel=1e-3)
-
-
-@pytest.mark.parametrize(("shore", "megapascal"), [(30.0, 1.14), (50.0, 2.46), (70.0, 5.54)])
-def test_gent_hardness_to_modulus(shore: float, megapascal: float) -> None:
-    # Gent 1958, evaluated by hand: S = 50 gives 0.0981 · 437.168/(0.137505 · 127) = 2.456 MPa.
-    assert youngs_from_shore_Pa(shore) / 1e6 == pytest.approx(megapascal, rel=6e-3)
-
-
-@pytest.mark.parametrize("shore", [0.0, 100.0, -5.0, math.nan])
-def test_hardness_outside_its_scale_is_refused(shore: float) -> None:
-    with pytest.raises(InputError, match="shore_A must be above 0 and below 100"):
-        youngs_from_shore_Pa(shore)
 
 
 def test_a_drawing_becomes_numbers() -> None:

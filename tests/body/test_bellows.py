@@ -29,12 +29,6 @@ def unmeasured() -> Bellows:
     return replace(bending(), measured_bend=None, bend_stiffness_N_m_rad=0.02)
 
 
-@pytest.mark.parametrize("shore, youngs_MPa", [(20.0, 0.73), (30.0, 1.14), (50.0, 2.46), (70.0, 5.54)])
-def test_gent_1958_hardness_to_modulus(shore: float, youngs_MPa: float) -> None:
-    """Tabulated values of Gent's relation (Wikipedia, Shore durometer: S = 30 gives 1.1 MPa, 50 gives 2.5, 70 gives 5.5)."""
-    assert drawing.youngs_from_shore_A(shore) / 1e6 == pytest.approx(youngs_MPa, rel=0.02)
-
-
 def test_axial_rate_of_a_metal_bellows_is_that_of_ejma(monkeypatch: pytest.MonkeyPatch) -> None:
     """EJMA: f = 1.7 E D_m t³/(w³ C_f n), C_f = 1 (from memory); our strips give π/(2 (1 − 0.3²)) = 1.73 in place of 1.7."""
     monkeypatch.setattr(drawing, "POISSON_RUBBER", 0.3)
