@@ -140,6 +140,11 @@ class Ranking:
         query = "SELECT count(DISTINCT wiring) FROM walks WHERE settings = ?"
         return int(next(self._ledger.select(query, (self._settings.text,)))[0])
 
+    def walks(self) -> int:
+        """Number of walks of those wirings; one that was walked short and then until it settled counts twice."""
+        query = "SELECT count(*) FROM walks WHERE settings = ?"
+        return int(next(self._ledger.select(query, (self._settings.text,)))[0])
+
     def simulated_s(self) -> float:
         """Simulated time of all walks."""
         query = "SELECT total(simulated_s) FROM walks WHERE settings = ?"

@@ -82,6 +82,7 @@ def summary_of(task: SearchTask, facts: RunFacts, ranking: Ranking, ledger: Ledg
             "raw": task.space.raw,
             "distinct": task.space.distinct,
             "evaluated": ranking.evaluated(),
+            "walks": ranking.walks(),
             "failed": ranking.failed(),
             "best": place_facts(places[0]) if places else None,
             "ranking": [place_facts(place) for place in places],

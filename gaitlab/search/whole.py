@@ -21,7 +21,7 @@ from gaitlab.search.run import SearchTask, Watch, run_search
 from gaitlab.search.run_record import FinalRings, RunFacts, write_run
 from gaitlab.search.strategies.choice import StrategyChoice, strategy_of
 from gaitlab.search.summary import SearchSummary, summary_of
-from gaitlab.search.workers import Workers
+from gaitlab.search.workers import Workers, WorkersGone, WorkKills
 from gaitlab.trust.finalists import Checked, FinalistPlan, Task, check_plan, checked_finalists, checked_record
 from gaitlab.wiring.smooth import SmoothWaves
 
@@ -66,7 +66,7 @@ def search_robot(
         finished = run_search(task, strategy, ledger, workers, watch)
         _note_equals(task, ledger)
         ranking = Ranking(ledger, waves, task.objective, task.settings)
-        finals, finished = _finals(task, ranking, workers, finished)
+        finals, finished, notes = _finals(task, ranking, workers, finished)
         checked, finished = _checked(task, plan, ranking, workers, finished, tell_check)
         facts = RunFacts(
             robot_path=file.path.name,
@@ -78,7 +78,8 @@ def search_robot(
             wall_s=time.perf_counter() - begin,
         )
         _write(plan.folder, task, facts, ranking, finals, checked)
-        return replace(summary_of(task, facts, ranking, ledger, plan.folder), checked=checked)
+        summary = summary_of(task, facts, ranking, ledger, plan.folder)
+        return replace(summary, checked=checked, facts={**summary.facts, "notes": [*summary.facts["notes"], *notes]})
 
 
 def refuse_unbuildable(task: SearchTask) -> None:
@@ -116,16 +117,23 @@ def _note_equals(task: SearchTask, ledger: Ledger) -> None:
         ledger.note_equals(pairs)
 
 
-def _finals(task: SearchTask, ranking: Ranking, workers: Workers, finished: bool) -> tuple[list[Final], bool]:
-    """After Ctrl-C only the ring is solved; Ctrl-C during the last walks leaves out the films."""
+def _finals(
+    task: SearchTask, ranking: Ranking, workers: Workers, finished: bool
+) -> tuple[list[Final], bool, tuple[str, ...]]:
+    """The finals, whether the search still counts as finished, and what is to say.
+
+    After Ctrl-C only the ring is solved; Ctrl-C during the last walks and a walk that ends its worker leave out the films.
+    """
     best = ranking.first(1)
     if not best:
-        return [], finished
+        return [], finished, ()
     try:
-        return (finals_of(task, best[0], workers) if finished else best_ring(task, best[0])), finished
-    except KeyboardInterrupt:
+        return (finals_of(task, best[0], workers) if finished else best_ring(task, best[0])), finished, ()
+    except (KeyboardInterrupt, WorkersGone):
         workers.close()
-        return best_ring(task, best[0]), False
+        return best_ring(task, best[0]), False, ()
+    except WorkKills as error:
+        return best_ring(task, best[0]), finished, (f"no film: {error}",)
 
 
 def _checked(
@@ -141,9 +149,10 @@ def _checked(
     if not finished or not best:
         return None, finished
     whose = Task(task.robot, task.document, task.settings, task.objective)
+    tell(0)
     try:
         return checked_finalists(whose, best, plan.finalists, workers, tell=tell), finished
-    except KeyboardInterrupt:
+    except (KeyboardInterrupt, WorkersGone):
         return None, False
 
 

@@ -21,6 +21,7 @@ from gaitlab.search.guard import follow_parent
 IN_FLIGHT_PER_WORKER = 2  # one running and one waiting, so that no worker idles; chosen by us
 LOSSES_MAX = 3  # a walk during which a worker died this often is given up; chosen by us
 REMEDY = "walk this wiring alone with `gaitlab walk`: it ends the process (memory, or a fault of the engine); --resume tries it again"
+GONE = "the cluster's scheduler is gone; usual fix: start it again and go on with --resume"
 ONE_THREAD = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")
 
 
@@ -31,6 +32,10 @@ Result = TypeVar("Result")
 
 class WorkersGone(GaitlabError):
     """No worker can be reached any more: the search ends with what it has, as after Ctrl-C."""
+
+
+class WorkKills(GaitlabError):
+    """Every worker that took up this piece of work died at it."""
 
 
 class Workers(Protocol):
@@ -92,15 +97,15 @@ class ExecutorWorkers:
             if not running:
                 return
             done, _ = wait(running, timeout=LOOK_EVERY_s, return_when=FIRST_COMPLETED)
-            if not self.reachable():
-                raise WorkersGone("the cluster's scheduler is gone; usual fix: start it again and go on with --resume")
-            lost: list[Job] = []
+            gone, lost = not self.reachable(), list[Job]()
             for future in done:
                 job = running.pop(future)
                 try:
                     yield job, future.result()
                 except self.lost:
                     lost.append(job)
+            if gone:
+                raise WorkersGone(GONE)
             if any(_broken(future) for future in done):
                 lost.extend(running.values())
                 running.clear()
@@ -108,13 +113,32 @@ class ExecutorWorkers:
             yield from self._judged(lost, suspects)
 
     def each(self, function: Callable[[Job], Result], jobs: Sequence[Job]) -> list[Result]:
-        """What `function` makes of each job, side by side and in their order; done in this process if a worker dies at it."""
+        """What `function` makes of each job, side by side and in their order.
+
+        What a dying worker took along is done again by a fresh one, never in this process. Raises WorkKills for a job at which
+        `LOSSES_MAX` workers died, WorkersGone when there is nothing to start one on.
+        """
+        found: dict[int, Result] = {}
         try:
-            futures = [self._started().submit(function, job) for job in jobs]
-            return [future.result() for future in futures]
-        except self.lost:
+            for number, future in enumerate([self._started().submit(function, job) for job in jobs]):
+                found[number] = future.result()
+        except BrokenProcessPool:
             self.close()
-            return [function(job) for job in jobs]
+        except self.lost:
+            pass  # the executor itself still stands
+        return [found[k] if k in found else self._alone(function, job) for k, job in enumerate(jobs)]
+
+    def _alone(self, function: Callable[[Job], Result], job: Job) -> Result:
+        for _ in range(LOSSES_MAX - 1):
+            if not self.reachable():
+                raise WorkersGone(GONE)
+            try:
+                return self._started().submit(function, job).result()
+            except BrokenProcessPool:
+                self.close()
+            except self.lost:
+                continue
+        raise WorkKills(f"{LOSSES_MAX} workers died at {job.wiring.text()}; usual fix: {REMEDY.partition(';')[0]}")
 
     def close(self) -> None:
         """Ends the executor without waiting for what it is at."""

@@ -4,6 +4,7 @@ Run from the root; every command prints a Markdown table. Tables are kept in FOL
 
     python tests/benchmarks/search_cost.py robots FOLDER            # writes the robots' files
     gaitlab search FOLDER/NAME.toml --out FOLDER/NAME --no-pictures --finalists 0      # once per robot; an hour, or minutes
+    python tests/benchmarks/search_cost.py coarse FOLDER --robot NAME      # or a table of a coarser body, NAME.jsonl
     python tests/benchmarks/search_cost.py curves FOLDER            # strategies against the tables, 10 seeds
     python tests/benchmarks/search_cost.py screening FOLDER         # how well short walks rank
     python tests/benchmarks/search_cost.py nine FOLDER              # nine legs, nine stages: gp against random draws
@@ -14,12 +15,13 @@ Run from the root; every command prints a Markdown table. Tables are kept in FOL
 from __future__ import annotations
 
 import argparse
+import json
 import math
 import sqlite3
 import statistics
 import sys
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cache
 from pathlib import Path
 
@@ -29,12 +31,15 @@ from scipy.stats import spearmanr
 sys.path.insert(0, str(Path(__file__).resolve().parents[2]))
 sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
 
+from benchmarks.search_coarse import CoarseWalks
 from benchmarks.search_robots import robot_files
 
 from gaitlab.gait.records import Walk
 from gaitlab.robot.reader import read_robot
 from gaitlab.robot.records import Robot
+from gaitlab.search.evaluate import Job, failed_walk
 from gaitlab.search.schema import walk_from, wiring_from_ledger
+from gaitlab.search.settings import WalkSettings
 from gaitlab.search.strategies.ask_tell import Ask, Reading, Strategy
 from gaitlab.search.strategies.choice import StrategyChoice, strategy_of
 from gaitlab.search.strategies.process_search import ProcessSearch, ProcessTuning
@@ -46,15 +51,27 @@ from gaitlab.wiring.wiring import Wiring
 
 SEEDS = range(10)
 CLOSE = 0.03  # "within 3 % of the best"
+SETTLED_PERIODS = 4  # what nearly every settled walk of these robots takes
+COARSE_PERIODS = 3
+COARSE_SEGMENTS = 2
 
 
 @dataclass(frozen=True)
 class Table:
     """Every distinct wiring of one robot, walked until settled."""
 
+    label: str
     robot: Robot
     space: WiringSpace
     walks: dict[Wiring, Walk]
+
+    @classmethod
+    def of_coarse(cls, folder: Path, name: str) -> Table:
+        """A table of the coarse body: its third period stands for the settled one, whose cost is that of four periods."""
+        robot = read_robot(folder / f"{name}.toml").robot
+        lines = map(json.loads, (folder / f"{name}.jsonl").read_text(encoding="utf-8").splitlines())
+        walks = {wiring_from_ledger(w): coarse_record(robot, travels, outcome, T) for w, travels, outcome, T in lines}
+        return cls(f"{name}, coarse", robot, WiringSpace.of(robot), walks)
 
     @classmethod
     def of(cls, folder: Path, name: str) -> Table:
@@ -66,7 +83,7 @@ class Table:
         missing = space.distinct - len(walks)
         if missing:
             raise SystemExit(f"{folder / name} lacks {missing} of {space.distinct} wirings: go on with its search")
-        return cls(robot, space, walks)
+        return cls(name, robot, space, walks)
 
     def reading(self, ask: Ask) -> Reading:
         """What the ask would have read: a walk of few periods is the beginning of the settled one."""
@@ -91,6 +108,14 @@ class Table:
     @property
     def total_s(self) -> float:
         return sum(walk.simulated_s for walk in self.walks.values())
+
+
+def coarse_record(robot: Robot, travels: list[float], outcome: str, period_s: float) -> Walk:
+    """A coarse walk as the record of a settled one."""
+    blank = failed_walk(Job("", Wiring(()), WalkSettings(), ""), outcome, "")
+    simulated_s = robot.numerics.settle_s + SETTLED_PERIODS * period_s
+    travel = travels[-1] if outcome == "walked" else math.nan
+    return replace(blank, period_s=period_s, travel_m=travel, travels_m=tuple(travels), simulated_s=simulated_s)
 
 
 @dataclass(frozen=True)
@@ -173,36 +198,62 @@ def curve(table: Table, maker: Maker) -> Iterator[str]:
 def curves(folder: Path) -> None:
     print("| robot | strategy | walks | simulated s of exhaustive | best found (median) | within 3 % |")
     print("|---|---|---|---|---|---|")
-    for name in tables(folder):
-        table = Table.of(folder, name)
+    for table in tables(folder):
         for label, maker in MAKERS.items():
             for line in curve(table, maker):
-                print(f"| {name} ({table.space.distinct}) | {label} | {line} |", flush=True)
+                print(f"| {table.label} ({table.space.distinct}) | {label} | {line} |", flush=True)
 
 
-def tables(folder: Path) -> list[str]:
-    found = sorted(
-        path.parent.name for path in folder.glob("*/ledger.sqlite") if (folder / f"{path.parent.name}.toml").exists()
-    )
-    return [name for name in found if name != "nine"]
+def tables(folder: Path) -> list[Table]:
+    """Every complete table in the folder, real walks first."""
+    names = sorted(path.stem for path in folder.glob("*.toml"))
+    real = [Table.of(folder, name) for name in names if (folder / name / "ranking.csv").exists()]
+    coarse = [Table.of_coarse(folder, name) for name in names if (folder / f"{name}.jsonl").exists()]
+    return real + [table for table in coarse if len(table.walks) == table.space.distinct]
+
+
+def coarse(folder: Path, name: str) -> None:
+    """Walks every wiring of a robot with the coarse body."""
+    text = (folder / f"{name}.toml").read_text(encoding="utf-8")
+    walks = CoarseWalks(folder / f"{name}.jsonl", text, segments=COARSE_SEGMENTS, periods=COARSE_PERIODS)
+    walks.travels(list(WiringSpace.of(read_robot(folder / f"{name}.toml").robot)))
+    walks.close()
 
 
 def screening(folder: Path) -> None:
     print("| robot | short walk | rank correlation with settled | rank of the true best |")
     print("|---|---|---|---|")
-    for name in tables(folder):
-        table = Table.of(folder, name)
+    for table in tables(folder):
         measured = [w for w in table.walks.values() if w.travel_m == w.travel_m]
         settled = np.array([walk.travel_m for walk in measured])
         for periods in (1, 2, 3):
             short = np.array([walk.travels_m[min(periods, len(walk.travels_m)) - 1] for walk in measured])
             place = int(np.sum(short > short[int(np.argmax(settled))])) + 1
-            print(f"| {name} | period {periods} | {spearmanr(short, settled).statistic:.4f} | {place} |")
+            print(f"| {table.label} | period {periods} | {spearmanr(short, settled).statistic:.4f} | {place} |")
+
+
+def agreement(folder: Path) -> None:
+    """How the coarse body ranks the wirings that a search, finished or not, has walked in full."""
+    print("| robot | wirings walked both ways | rank correlation |")
+    print("|---|---|---|")
+    for path in sorted(folder.glob("*.jsonl")):
+        ledger = folder / path.stem / "ledger.sqlite"
+        if ledger.exists():
+            table = Table.of_coarse(folder, path.stem)
+            with sqlite3.connect(ledger) as connection:
+                rows = connection.execute(
+                    "SELECT wiring, travel_m FROM walks WHERE level = 'settled' AND status = 'scored'"
+                )
+                full = {wiring_from_ledger(wiring): travel for wiring, travel in rows}
+            both = [
+                (full[w], table.walks[w].travel_m) for w in full if table.walks[w].travel_m == table.walks[w].travel_m
+            ]
+            print(f"| {path.stem} | {len(both)} | {spearmanr(*zip(*both, strict=True)).statistic:.3f} |")
 
 
 def tune(folder: Path, name: str) -> None:
-    """Settings of the process search on one table, at the cost that the promise allows."""
-    table = Table.of(folder, name)
+    """Settings of the process search on one coarse table, at the cost that the promise allows."""
+    table = Table.of_coarse(folder, name)
     print("| first | batch | daring | settled share | walks | cost | worst | mean | within 3 % |")
     print("|---|---|---|---|---|---|---|---|---|")
     for first in (8, 16, 24):
@@ -224,7 +275,9 @@ def tune(folder: Path, name: str) -> None:
 @cache
 def arguments() -> argparse.Namespace:
     parser = argparse.ArgumentParser(description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter)
-    parser.add_argument("command", choices=["robots", "curves", "screening", "tune", "nine", "workers", "growth"])
+    parser.add_argument(
+        "command", choices=["robots", "coarse", "agreement", "curves", "screening", "tune", "nine", "workers", "growth"]
+    )
     parser.add_argument("folder", nargs="?", type=Path)
     parser.add_argument("--robot", default="tray_row7")
     return parser.parse_args()
@@ -248,10 +301,12 @@ def main() -> None:
         from benchmarks.search_nine import nine
 
         nine(given.folder)
+    elif given.command == "coarse":
+        coarse(given.folder, given.robot)
     elif given.command == "tune":
         tune(given.folder, given.robot)
     else:
-        {"curves": curves, "screening": screening}[given.command](given.folder)
+        {"curves": curves, "screening": screening, "agreement": agreement}[given.command](given.folder)
 
 
 if __name__ == "__main__":

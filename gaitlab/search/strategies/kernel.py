@@ -1,8 +1,8 @@
 """How alike two wirings are: the kernel of a Gaussian process over wirings.
 
 k(w, w′) = exp(−a (1 − s)), s the weighted mean over pairs of inlets of cos(Δ − Δ′), Δ being the phase difference of the pair. It sees
-phase differences only, so that turning the ring changes nothing. A pair weighs the inverse of its distance on the body, because
-legs near each other share the load and get into each other's way. With a mirror-symmetric body k is averaged over both
+phase differences only, so that turning the ring changes nothing. A pair weighs the inverse square of its distance on the body,
+because legs near each other share the load and get into each other's way. With a mirror-symmetric body k is averaged over both
 images of a wiring.
 """
 
@@ -21,8 +21,9 @@ from gaitlab.wiring.wiring import Wiring
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.intp]
 
-# a of exp(−a (1 − s)): the likelihood of a seven-leg body's walks is highest near 1, the search finds most at 1.5.
-SHARPNESS = 1.5
+# a of exp(−a (1 − s)) and the weights' power: where walks of one seven-leg body are most likely and most is found; kept for all.
+SHARPNESS = 1.0
+POWER = 2
 KINDS = 3  # on an output, on atmosphere, on the supply
 
 
@@ -81,9 +82,9 @@ def pairs_of(number: int) -> tuple[IntArray, IntArray]:
 
 
 def pair_weights(places: FloatArray) -> FloatArray:
-    """Share of each pair of places (n, 2), ∝ 1/distance; distances below the smallest one between different places count as that."""
+    """Share of each pair of places (n, 2), ∝ 1/distance²; distances below the smallest one between different places count as that."""
     first, second = pairs_of(len(places))
     distance = np.hypot(*(places[first] - places[second]).T)
     apart = distance[distance > 0.0]
-    weights = 1.0 / np.maximum(distance, np.min(apart) if len(apart) else 1.0)
+    weights = np.maximum(distance, np.min(apart) if len(apart) else 1.0) ** -float(POWER)
     return np.asarray(weights / np.sum(weights))

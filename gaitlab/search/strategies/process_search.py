@@ -32,8 +32,8 @@ class ProcessTuning:
 
 
 def default_budget(space: WiringSpace) -> int:
-    """An eighth of the wirings, at least 24 walks and at most 400; chosen by us on the tables of the benchmark."""
-    return min(space.distinct + 4, max(24, min(400, round(space.distinct / 8))))
+    """A seventh of the wirings, at least 24 walks and at most 400; chosen by us on the tables of the benchmark."""
+    return min(space.distinct + 4, max(24, min(400, round(space.distinct / 7))))
 
 
 class ProcessSearch:
@@ -56,7 +56,7 @@ class ProcessSearch:
         self._tuning, self._budget = tuning, budget or default_budget(space)
         settled = max(1, round(tuning.settled_share * self._budget))
         self._short_left = min(space.distinct, max(1, self._budget - settled))
-        self._settling = Settling(min(settled, self._budget - self._short_left) or 1)
+        self._settling = Settling(min(settled, self._budget - self._short_left))
         self._candidates = Candidates(space, np.random.default_rng(seed))
         self._kernel = WiringKernel(space)
         self._first = list(first)

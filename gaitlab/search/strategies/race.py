@@ -30,7 +30,7 @@ class Race:
         total = budget or space.distinct + max(4, round(SETTLED_SHARE * space.distinct))
         settled = max(1, round(SETTLED_SHARE * total / (1.0 + SETTLED_SHARE)))
         self._runners = min(space.distinct, max(1, total - settled))
-        self._settling = Settling(max(1, min(total - self._runners, self._runners)))
+        self._settling = Settling(min(total - self._runners, self._runners))
         self._expected = self._runners + min(settled, self._runners)
         self._start = self._field(space, seed)
 
