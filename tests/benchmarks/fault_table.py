@@ -174,9 +174,10 @@ def tried(words: str, trial: Trial, bench: Bench, times: int) -> Counter[str]:
 
 @click.command()
 @click.option("--quick", is_flag=True, help="A few trials of each, as a smoke test.")
+@click.option("--share", default=1.0, show_default=True, help="Part of the long run's trials, for a shorter one.")
 @click.option("--seed", default=1, show_default=True)
 @click.option("--only", default="", help="Only rows whose words hold this text.")
-def main(quick: bool, seed: int, only: str) -> None:
+def main(quick: bool, share: float, seed: int, only: str) -> None:
     """Tries every fault and prints what happened as a Markdown table."""
     failed = 0
     with tempfile.TemporaryDirectory() as folder:
@@ -187,7 +188,7 @@ def main(quick: bool, seed: int, only: str) -> None:
             if only not in words:
                 continue
             begin = time.perf_counter()
-            met = tried(words, trial, bench, few if quick else many)
+            met = tried(words, trial, bench, few if quick else max(1, round(share * many)))
             failed += met["FAILED"]
             told = "; ".join(f"{what} ({n})" if len(met) > 1 else what for what, n in met.most_common() if n)
             click.echo(f"| {words} | {faults * sum(met.values())} | {told} |")
