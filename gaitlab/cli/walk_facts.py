@@ -48,7 +48,7 @@ def walk_rows(facts: dict[str, Any]) -> list[tuple[str, object]]:
     return [
         ("outcome", facts["outcome"]),
         ("period", f"{_text(facts['period_s'], 4)} s"),
-        ("travel", f"{_text(facts['travel_mm_per_period'])} ± {hundredths(facts['travel_scatter_mm'])} mm per period"),
+        ("travel", f"{_text(facts['travel_mm_per_period'])} ± {_scatter(facts['travel_scatter_mm'])} mm per period"),
         ("speed", f"{_text(facts['speed_mm_s'])} mm/s, {_text(facts['speed_body_lengths_s'], 2)} body lengths/s"),
         ("drift", f"{hundredths(facts['drift_mm_per_period'])} mm per period to the left"),
         ("turn", f"{hundredths(facts['turn_deg_per_period'])}° per period to the left"),
@@ -72,6 +72,11 @@ def hundredths(value: float) -> str:
     ('0.00', '3.14', '–')
     """
     return f"{round(value, 2) + 0.0:.2f}" if math.isfinite(value) else "–"
+
+
+def _scatter(value: float) -> str:
+    """A scatter to 0.01; a smaller one is not none."""
+    return "under 0.01" if 0.0 <= value < 0.005 else hundredths(value)
 
 
 def _text(value: float, digits: int = 3) -> str:

@@ -55,7 +55,7 @@ def test_drift_turn_and_scatter_are_told_to_a_hundredth() -> None:
     rows = dict(walk_rows(walk_facts(walk)))
     assert walk_facts(walk)["drift_mm_per_period"] == pytest.approx(-0.00123)
     assert rows["drift"] == "0.00 mm per period to the left" and rows["turn"] == "0.99° per period to the left"
-    assert str(rows["travel"]).endswith("± 0.00 mm per period")
+    assert str(rows["travel"]).endswith("± under 0.01 mm per period")
 
 
 def test_save_writes_the_motion_and_does_not_overwrite_it(tmp_path: Path) -> None:
