@@ -27,7 +27,10 @@ def spread_plot(spread: Spread, *, title: str = "Spread over the tolerances") ->
             travel = row.summary.travel_m
             ax.plot([MM * travel.p05, MM * travel.p95], [y, y], color=BLUE, lw=5, alpha=0.45, solid_capstyle="butt")
             ax.plot(MM * travel.p50, y, marker="o", ms=7, mfc="white", mec=BLUE, mew=1.8)
-            chances = f"best {100 * row.summary.best.share:.0f} %\nforward {100 * row.summary.forward.share:.0f} %"
+            best = (
+                f"best {100 * row.summary.best.share:.0f} %\n" if len(spread.wirings) > 1 else ""
+            )  # alone: of nothing
+            chances = f"{best}forward {100 * row.summary.forward.share:.0f} %"
             ax.text(1.01, y, chances, transform=ax.get_yaxis_transform(), va="center", fontsize=8, color=INK)
         ax.axvline(0.0, color=MUTED, lw=0.8)
         ax.set_yticks(range(len(spread.wirings)), labels, fontsize=LABEL_PT)

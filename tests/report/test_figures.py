@@ -146,6 +146,15 @@ def test_a_house_line_has_no_pump_curve(run_folder: Path) -> None:
     assert pump_working_point(dataclasses.replace(run.robot, supply=FixedVacuum(50e3)), run.ring) is None
 
 
+def test_a_wiring_alone_is_best_of_nothing(run_folder: Path) -> None:
+    """Its chance to be the best would always be 100 %: drawn only where there are several."""
+    spread = read_run(run_folder).spread
+    assert spread is not None and len(spread.wirings) > 1
+    alone = dataclasses.replace(spread, wirings=spread.wirings[:1])
+    told = ["".join(text.get_text() for text in spread_plot(s).axes[0].texts) for s in (spread, alone)]
+    assert "best" in told[0] and "best" not in told[1] and "forward" in told[1]
+
+
 def test_a_wrong_ending_and_a_missing_folder(run_folder: Path, tmp_path: Path) -> None:
     figure = spread_plot(read_run(run_folder).spread)
     with pytest.raises(InputError, match=r"must be .png, .svg or .pdf, got '.jpeg'"):
