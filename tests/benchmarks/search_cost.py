@@ -79,11 +79,11 @@ class Table:
         with sqlite3.connect(folder / name / "ledger.sqlite") as connection:
             rows = connection.execute("SELECT wiring, walk FROM walks WHERE level = 'settled'").fetchall()
         walks = {wiring_from_ledger(wiring): walk_from(walk) for wiring, walk in rows}
-        space = WiringSpace.of(robot)
-        missing = space.distinct - len(walks)
-        if missing:
-            raise SystemExit(f"{folder / name} lacks {missing} of {space.distinct} wirings: go on with its search")
-        return cls(name, robot, space, walks)
+        return cls(name, robot, WiringSpace.of(robot), walks)
+
+    @property
+    def complete(self) -> bool:
+        return len(self.walks) == self.space.distinct
 
     def reading(self, ask: Ask) -> Reading:
         """What the ask would have read: a walk of few periods is the beginning of the settled one."""
@@ -207,9 +207,9 @@ def curves(folder: Path) -> None:
 def tables(folder: Path) -> list[Table]:
     """Every complete table in the folder, real walks first."""
     names = sorted(path.stem for path in folder.glob("*.toml"))
-    real = [Table.of(folder, name) for name in names if (folder / name / "ranking.csv").exists()]
+    real = [Table.of(folder, name) for name in names if (folder / name / "ledger.sqlite").exists()]
     coarse = [Table.of_coarse(folder, name) for name in names if (folder / f"{name}.jsonl").exists()]
-    return real + [table for table in coarse if len(table.walks) == table.space.distinct]
+    return [table for table in real + coarse if table.complete]
 
 
 def coarse(folder: Path, name: str) -> None:

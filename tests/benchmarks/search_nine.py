@@ -1,7 +1,7 @@
 """Nine legs on nine stages, 40 320 distinct wirings: 400 walks placed by the Gaussian process against 400 drawn at random.
 
 The body is coarse (one segment a leg, see `search_coarse.py`) so that some three thousand walks are affordable. Both strategies
-are judged by the second period's travel of the same walks. The random draws of all seeds come out of one pool of 1000.
+are judged by the second period's travel of the same walks. The random draws of all seeds come out of one pool of 600.
 """
 
 from __future__ import annotations
@@ -25,7 +25,7 @@ from gaitlab.wiring.space import WiringSpace
 LEGS = 9
 SEGMENTS = 1
 WALKS = 400
-POOL = 1000
+POOL = 600
 SEEDS = range(5)
 
 
