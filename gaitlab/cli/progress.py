@@ -33,7 +33,12 @@ class Progress:
         self._drawn = 0
 
     def advance(self, steps: int = 1, note: str | None = None, *, already_done: bool = False) -> None:
-        """Counts `steps` more; `note` replaces the text behind the bar; `already_done` ones do not count for the pace."""
+        """Counts `steps` more; `note` replaces the text behind the bar; `already_done` ones do not count for the pace.
+
+        No steps before the first say that the work begins now, where the bar was made long before.
+        """
+        if steps == 0 and self._done == 0:
+            self._start = self._clock()
         self._done += steps
         self._skipped += steps if already_done else 0
         self._note = self._note if note is None else note

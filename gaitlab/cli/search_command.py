@@ -34,6 +34,7 @@ from gaitlab.search.objective import OBJECTIVES, SCALE, UNITS
 from gaitlab.search.run import SearchTask, Step
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.strategies.choice import STRATEGIES, StrategyChoice, strategy_of
+from gaitlab.search.strategies.closing import BEST
 from gaitlab.search.strategies.process_search import default_budget
 from gaitlab.search.summary import DONE, INTERRUPTED, SearchSummary
 from gaitlab.search.whole import SearchPlan, search_robot
@@ -52,7 +53,12 @@ EXIT_INTERRUPTED = 130
 @click.option(
     "--objective", type=click.Choice(OBJECTIVES), help="What is ranked; default: the robot file's, else travel."
 )
-@click.option("--budget", type=int, help="Walks to spend at most; default: as many as the strategy wants.")
+@click.option(
+    "--budget",
+    type=int,
+    help="Walks that the strategy may spend; default: as many as it wants. On top, except with exhaustive, come settled walks of the "
+    f"smooth waves and of the reversed waves of the {BEST} best where they are missing, and always those of --finalists.",
+)
 @workers_option
 @click.option(
     "--cluster", metavar="ADDRESS", help="Scheduler of a dask.distributed cluster instead of local processes."

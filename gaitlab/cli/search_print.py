@@ -24,10 +24,11 @@ def print_search(summary: SearchSummary, task: SearchTask) -> None:
     if summary.outcome != DONE:
         click.echo(f"outcome: {summary.outcome}\nremedy: {summary.remedy}")
     _print_places(summary, task)
+    walks = "1 walk" if facts["walks"] == 1 else f"{facts['walks']} walks"
     failed = ", ".join(f"{count} {outcome}" for outcome, count in sorted(facts["failed"].items())) or "none"
     print_facts(
         [
-            ("wirings", f"{facts['raw']} in all, {facts['distinct']} distinct, {facts['evaluated']} walked"),
+            ("wirings", f"{facts['raw']} in all, {facts['distinct']} distinct, {facts['evaluated']} walked in {walks}"),
             ("failed", failed),
             *_smooth_lines(summary),
             ("score", f"{MEANING[task.objective]} [{UNITS[task.objective]}]; {TIE_RULE}"),

@@ -126,6 +126,16 @@ def test_work_done_before_does_not_count_for_the_pace() -> None:
     assert "60/100, about 40 s left" in bar.line(10.0)
 
 
+def test_the_pace_counts_from_the_beginning_of_the_work() -> None:
+    clock = Clock()
+    bar = Progress(4, "finalists again", stream=io.StringIO(), clock=clock)
+    clock.now = 1000.0
+    bar.advance(0)
+    clock.now = 1010.0
+    bar.advance(1)
+    assert bar._left(clock.now - bar._start) == "about 30 s left"
+
+
 def test_on_a_terminal_one_line_is_redrawn() -> None:
     clock, stream = Clock(), Terminal()
     bar = Progress(2, "x", stream=stream, clock=clock)

@@ -15,6 +15,8 @@ from wiring.robots import ROBOTS
 from gaitlab.cli import search_command
 from gaitlab.search import whole
 from gaitlab.search.evaluate import Evaluation, Job, failed_walk
+from gaitlab.search.finals import Final
+from gaitlab.search.workers import WorkKills
 from tests.cli.commands import Finished, gaitlab
 
 ROW5 = str(ROBOTS / "tray_row5.toml")
@@ -59,6 +61,37 @@ def test_json_has_every_promised_key(search: Any, tmp_path: Path) -> None:
         "run.json",
         "traces",
     }
+
+
+def test_walks_are_counted_beside_wirings(search: Any, tmp_path: Path) -> None:
+    """A race walks some wirings short and then until they settle."""
+    facts = json.loads(search("--strategy", "race", "--json").out)
+    with sqlite3.connect(tmp_path / "run" / "ledger.sqlite") as connection:
+        walks, wirings = connection.execute("SELECT count(*), count(DISTINCT wiring) FROM walks").fetchone()
+    assert (facts["walks"], facts["evaluated"]) == (walks, wirings) and walks > wirings
+    again = search("--strategy", "race", "--resume")
+    assert f"24 distinct, {wirings} walked in {walks} walks" in again.out
+
+
+def test_help_says_what_comes_on_top_of_a_budget() -> None:
+    said = " ".join(gaitlab("search", "--help").out.split())
+    assert "Walks that the strategy may spend" in said
+    assert "smooth waves and of the reversed waves of the 5 best" in said and "those of --finalists" in said
+
+
+def test_a_last_walk_that_ends_its_worker_is_told_and_spoils_nothing(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def killing(*_: object) -> list[Final]:
+        raise WorkKills("3 workers died at a=1")
+
+    monkeypatch.setattr(search_command, "search_robot", partial(whole.search_robot, evaluating=by_formula))
+    monkeypatch.setattr(whole, "finals_of", killing)
+    monkeypatch.setattr(whole, "best_ring", lambda task, best: [])
+    done = gaitlab("search", ROW5, "--no-pictures", "--finalists", "0", "--out", str(tmp_path / "run"), "--json")
+    facts = json.loads(done.out)
+    assert done.code == 0 and facts["notes"][-1] == "no film: 3 workers died at a=1"
+    assert json.loads((tmp_path / "run" / "run.json").read_text())["finished"] is True
 
 
 def test_people_get_a_table_that_names_the_smooth_waves(search: Any) -> None:

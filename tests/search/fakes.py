@@ -87,3 +87,16 @@ def dies_always(job: Job) -> Evaluation:
     if job.wiring.text() == "a=1 b=4 c=2 d=5 e=3":
         os.kill(os.getpid(), signal.SIGKILL)
     return by_hash(job)
+
+
+def kills_a_worker_once(job: Job) -> Evaluation:
+    """As `dies_once`, and never in the process that started the workers."""
+    assert os.environ["GAITLAB_TEST_PARENT"] != str(os.getpid())
+    return dies_once(job)
+
+
+def kills_every_worker(job: Job) -> Evaluation:
+    """Kills any worker, never the process that started it."""
+    assert os.environ["GAITLAB_TEST_PARENT"] != str(os.getpid())
+    os.kill(os.getpid(), signal.SIGKILL)
+    return by_hash(job)

@@ -3,22 +3,36 @@
 from __future__ import annotations
 
 import csv
+import os
 import sqlite3
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
+from concurrent.futures import CancelledError, ThreadPoolExecutor
+from contextlib import closing
 from pathlib import Path
 
 import pytest
-from search.fakes import by_formula, by_hash, dies_always, dies_once, slowly, task_of
+from search.fakes import (
+    by_formula,
+    by_hash,
+    dies_always,
+    dies_once,
+    kills_a_worker_once,
+    kills_every_worker,
+    slowly,
+    task_of,
+)
 
 from gaitlab.errors import InputError
 from gaitlab.search.evaluate import WORKER_LOST, Evaluate, Evaluation, Job
 from gaitlab.search.ledger_file import LEDGER_FILE, created, reopened
 from gaitlab.search.ranking import Ranked, Ranking
 from gaitlab.search.ranking_table import write_ranking
-from gaitlab.search.run import SearchTask, Step, run_search
+from gaitlab.search.run import SearchTask, Step, job_of, run_search
+from gaitlab.search.strategies.ask_tell import Ask
 from gaitlab.search.strategies.choice import STRATEGIES, StrategyChoice, strategy_of
-from gaitlab.search.workers import InProcess, Workers, local_workers
+from gaitlab.search.workers import ExecutorWorkers, InProcess, Workers, WorkersGone, WorkKills, local_workers
 from gaitlab.wiring.smooth import SmoothWaves
+from gaitlab.wiring.wiring import Wiring
 
 ROW = task_of()
 WAVES = SmoothWaves.of(ROW.robot, ROW.space)
@@ -112,7 +126,7 @@ def test_objectives_rank_one_ledger(tmp_path: Path, objective: str) -> None:
 
 @pytest.mark.parametrize("name", STRATEGIES)
 def test_contract_of_every_strategy(tmp_path: Path, name: str) -> None:
-    """Asks only for allowed representatives, repeats with its seed, stays near its budget, ends."""
+    """Asks only for allowed representatives, each length of each once, repeats with its seed, ends."""
     task = task_of(6, 5, inlets_per_output_max=2)
     choice = StrategyChoice(name, 40, 3)
     first = searched(tmp_path / "a", InProcess(by_hash), task=task, choice=choice)
@@ -120,8 +134,47 @@ def test_contract_of_every_strategy(tmp_path: Path, name: str) -> None:
     assert first == again
     with sqlite3.connect(tmp_path / "a" / LEDGER_FILE) as connection:
         rows = connection.execute("SELECT wiring, level FROM walks").fetchall()
-    assert len(rows) == len(set(rows)) <= 40 + 5 + len(SmoothWaves.of(task.robot, task.space).wirings())
+    assert len(rows) == len(set(rows))
     assert {wiring for wiring, _ in rows} <= {wiring.text() for wiring in task.space}
+
+
+@pytest.mark.parametrize("budget", [1, 2, 40])
+@pytest.mark.parametrize("name", STRATEGIES)
+def test_the_strategy_keeps_its_budget_and_closing_walks_come_on_top(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, name: str, budget: int
+) -> None:
+    """On top, and settled: the smooth waves that are missing, then the missing reversed waves of what is best by then."""
+    task = task_of(6, 5, inlets_per_output_max=2)
+    waves = SmoothWaves.of(task.robot, task.space)
+    strategy, spent, heard = strategy_of(StrategyChoice(name, budget, 3), task.space, waves), list[Ask](), list[Step]()
+    inner = getattr(strategy, "_inner", strategy)
+    ask = inner.ask
+
+    def noted() -> Sequence[Ask]:
+        asks = list(ask())
+        spent.extend(asks)
+        return asks
+
+    monkeypatch.setattr(inner, "ask", noted)
+    with created(tmp_path / LEDGER_FILE, task.identity) as ledger:
+        run_search(task, strategy, ledger, InProcess(by_hash), heard.append)
+    assert 1 <= len(spent) <= budget and [step.ask for step in heard[: len(spent)]] == spent
+    assert len(spent) == budget or name in ("race", "gp"), "only a race and a screening may end early"
+    on_top = [] if name == "exhaustive" else owed(heard[: len(spent)], waves.wirings(), task)
+    assert [step.ask for step in heard[len(spent) :]] == on_top
+
+
+def owed(steps: list[Step], smooth: Sequence[Wiring], task: SearchTask) -> list[Ask]:
+    """What has to come after these steps, worked out anew."""
+    settled = {step.ask.wiring: step.score.value for step in steps if step.ask.periods is None}
+    missing = [wiring for wiring in smooth if wiring not in settled]
+    for wiring in missing:
+        done = by_hash(job_of(task, Ask(wiring)))
+        settled[wiring] = done.walk.travel_m
+    walked = [wiring for wiring, value in settled.items() if value == value]
+    best = sorted(walked, key=lambda wiring: (-settled[wiring], wiring.text()))[:5]
+    backwards = [task.space.reversed(wiring) for wiring in best]
+    return [Ask(w) for w in missing] + [Ask(w) for w in dict.fromkeys(backwards) if w is not None and w not in settled]
 
 
 @pytest.mark.parametrize("name", STRATEGIES)
@@ -194,6 +247,41 @@ def test_a_wiring_that_kills_every_worker_is_given_up_by_name(tmp_path: Path) ->
         assert [failure.wiring.text() for failure in lost] == ["a=1 b=4 c=2 d=5 e=3"]
         assert "--resume tries it again" in lost[0].remedy
         assert ledger.number_of_walks() == 24
+
+
+def test_a_last_walk_that_kills_its_worker_is_done_again_by_another(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setenv("GAITLAB_TEST_FLAG", str(tmp_path / "flag"))
+    monkeypatch.setenv("GAITLAB_TEST_PARENT", str(os.getpid()))
+    jobs = [job_of(ROW, Ask(wiring)) for wiring in ROW.space]
+    with closing(local_workers(by_hash, 2)) as workers:
+        assert repr(workers.each(kills_a_worker_once, jobs)) == repr([by_hash(job) for job in jobs])
+    assert (tmp_path / "flag").exists()
+
+
+def test_a_last_walk_that_kills_every_worker_is_given_up_by_name(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("GAITLAB_TEST_PARENT", str(os.getpid()))
+    jobs = [job_of(ROW, Ask(wiring)) for wiring in ROW.space][:6]
+    with closing(local_workers(by_hash, 2)) as workers, pytest.raises(WorkKills, match="3 workers died at a=1"):
+        workers.each(kills_every_worker, jobs)
+
+
+def test_walks_that_are_finished_when_the_scheduler_goes_are_kept() -> None:
+    there = iter([True, False])
+    workers = ExecutorWorkers(
+        evaluate=by_hash,
+        start=lambda: ThreadPoolExecutor(1),
+        in_flight=1,
+        lost=(CancelledError,),
+        stop=lambda executor: executor.shutdown(),
+        reachable=lambda: next(there),
+    )
+    jobs, known = [job_of(ROW, Ask(wiring)) for wiring in ROW.space][:3], []
+    with closing(workers), pytest.raises(WorkersGone, match="scheduler is gone"):
+        for job, _ in workers.evaluated(jobs):
+            known.append(job)
+    assert known == jobs[:2]
 
 
 def test_workers_end_with_their_search(tmp_path: Path) -> None:

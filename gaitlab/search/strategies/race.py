@@ -30,8 +30,9 @@ class Race:
         total = budget or space.distinct + max(4, round(SETTLED_SHARE * space.distinct))
         settled = max(1, round(SETTLED_SHARE * total / (1.0 + SETTLED_SHARE)))
         self._runners = min(space.distinct, max(1, total - settled))
-        self._settling = Settling(min(total - self._runners, self._runners))
-        self._expected = self._runners + min(settled, self._runners)
+        most = min(total - self._runners, self._runners)
+        self._settling = Settling(most)
+        self._expected = self._runners + most
         self._start = self._field(space, seed)
 
     def _field(self, space: WiringSpace, seed: int) -> Iterator[Wiring]:
