@@ -105,7 +105,7 @@ def rechecks_text(run: SavedRun) -> str:
     )
     base = run.best.walk.travel_m
     moves = [abs(check.travel_m / base - 1.0) for check in run.rechecks if math.isfinite(check.travel_m) and base]
-    return f"{text}; travel moved by up to {100 * max(moves):.0f} %." if moves else f"{text}."
+    return f"{text}; the best wiring's travel moved by up to {100 * max(moves):.0f} %." if moves else f"{text}."
 
 
 def _no_order(run: SavedRun) -> str:

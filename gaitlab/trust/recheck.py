@@ -102,15 +102,17 @@ def judged(name: str, before: Sequence[Walk], after: Sequence[Walk], *, objectiv
 
 
 def verdict(found: Sequence[Recheck]) -> str:
-    """The report's line, for example ``order kept in 4 of 4 rechecks; distance ±18 %``."""
+    """The report's line, for example ``order kept in 4 of 4 rechecks; a finalist's travel moved by up to 18 %``."""
     told = [r for r in found if r.order_kept is not None]
     changes = [r.change for r in found if math.isfinite(r.change)]
     order = (
         f"order kept in {sum(bool(r.order_kept) for r in told)} of {len(told)} rechecks" if told else _no_order(found)
     )
-    return (
-        f"{order}; distance ±{max(changes):.0%}".replace("%", " %") if changes else f"{order}; no distance to compare"
-    )
+    return f"{order}; {_moved(changes)}"
+
+
+def _moved(changes: Sequence[float]) -> str:
+    return f"a finalist's travel moved by up to {100 * max(changes):.0f} %" if changes else "no travel to compare"
 
 
 def _no_order(found: Sequence[Recheck]) -> str:

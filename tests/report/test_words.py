@@ -19,3 +19,8 @@ def test_rechecks_of_tied_finalists_claim_no_order(run_folder: Path) -> None:
     assert rechecks_text(dataclasses.replace(run, rechecks=told)).startswith(
         "Finalists all tied: no order to keep (rechecks:"
     )
+
+
+def test_rechecks_name_whose_travel_moved(run_folder: Path) -> None:
+    """11.2 mm in the search, 9.9 mm in the second engine: 12 %."""
+    assert rechecks_text(read_run(run_folder)).endswith("; the best wiring's travel moved by up to 12 %.")

@@ -47,7 +47,7 @@ def test_tied_wirings_may_swap():
 def test_finalists_that_are_all_tied_have_no_order_to_keep():
     r = judged("x", [walk_of(10, 0.8), walk_of(9.5, 0.8)], [walk_of(9), walk_of(10)])
     assert (r.order_kept, r.note) == (None, "all tied")
-    assert verdict([r]) == "finalists all tied, no order to keep; distance ±10 %"
+    assert verdict([r]) == "finalists all tied, no order to keep; a finalist's travel moved by up to 10 %"
 
 
 def test_a_recheck_that_could_not_be_made_tells_nothing_of_the_order():
@@ -69,8 +69,8 @@ def test_one_finalist_has_no_order():
 def test_the_reports_line():
     before = [walk_of(10), walk_of(9)]
     found = [judged(str(k), before, [walk_of(10 + k * 0.45), walk_of(9)]) for k in range(1, 5)]
-    assert verdict(found) == "order kept in 4 of 4 rechecks; distance ±18 %"
-    assert verdict([judged("x", [walk_of(10)], [FALLEN])]) == "no order to keep; no distance to compare"
+    assert verdict(found) == "order kept in 4 of 4 rechecks; a finalist's travel moved by up to 18 %"
+    assert verdict([judged("x", [walk_of(10)], [FALLEN])]) == "no order to keep; no travel to compare"
 
 
 def test_every_recheck_walks_every_finalist_with_its_own_settings():
@@ -94,7 +94,7 @@ def test_every_recheck_walks_every_finalist_with_its_own_settings():
     assert seen[0][1].step_s == robot.numerics.step_s / 2
     assert seen[2][1].inertia_factor == robot.numerics.inertia_factor / 2
     assert {s.nudge_m for _, s in seen} == {0.0, 1e-3}
-    assert verdict(found) == "order kept in 4 of 4 rechecks; distance ±0 %"
+    assert verdict(found) == "order kept in 4 of 4 rechecks; a finalist's travel moved by up to 0 %"
 
 
 def test_an_order_that_hangs_on_the_inertia_factor_is_found_out():
@@ -110,7 +110,7 @@ def test_an_order_that_hangs_on_the_inertia_factor_is_found_out():
     finalists = [(wirings[0], walk_of(10)), (wirings[1], walk_of(9))]
     found = rechecks(robot, "{}", finalists, settings=WalkSettings(), objective="travel", workers=InProcess(hanging))
     assert [r.name for r in found if not r.order_kept] == ["half inertia factor"]
-    assert verdict(found) == "order kept in 3 of 4 rechecks; distance ±20 %"
+    assert verdict(found) == "order kept in 3 of 4 rechecks; a finalist's travel moved by up to 20 %"
 
 
 def test_without_an_inertia_factor_there_is_none_to_halve():
