@@ -171,7 +171,7 @@ BUDGETS = (
     0.08,
     0.10,
     0.12,
-    0.14,
+    0.145,
     0.17,
     0.20,
     0.25,
@@ -195,11 +195,13 @@ def curve(table: Table, maker: Maker) -> Iterator[str]:
             return
 
 
-def curves(folder: Path) -> None:
+def curves(folder: Path, wanted: str) -> None:
     print("| robot | strategy | walks | simulated s of exhaustive | best found (median) | within 3 % |")
     print("|---|---|---|---|---|---|")
     for table in tables(folder):
         for label, maker in MAKERS.items():
+            if wanted not in (label, "all"):
+                continue
             for line in curve(table, maker):
                 print(f"| {table.label} ({table.space.distinct}) | {label} | {line} |", flush=True)
 
@@ -280,6 +282,7 @@ def arguments() -> argparse.Namespace:
     )
     parser.add_argument("folder", nargs="?", type=Path)
     parser.add_argument("--robot", default="tray_row7")
+    parser.add_argument("--strategy", default="all", choices=[*MAKERS, "all"])
     return parser.parse_args()
 
 
@@ -305,8 +308,10 @@ def main() -> None:
         coarse(given.folder, given.robot)
     elif given.command == "tune":
         tune(given.folder, given.robot)
+    elif given.command == "curves":
+        curves(given.folder, given.strategy)
     else:
-        {"curves": curves, "screening": screening, "agreement": agreement}[given.command](given.folder)
+        {"screening": screening, "agreement": agreement}[given.command](given.folder)
 
 
 if __name__ == "__main__":

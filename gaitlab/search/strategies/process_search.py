@@ -27,8 +27,8 @@ class ProcessTuning:
 
     first: int = 8
     batch: int = 4
-    daring: float = 3.0
-    settled_share: float = 0.05
+    daring: float = 4.0
+    settled_share: float = 0.03
 
 
 def default_budget(space: WiringSpace) -> int:
