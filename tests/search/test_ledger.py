@@ -174,16 +174,14 @@ def test_a_read_only_ledger_is_refused(tmp_path: Path) -> None:
     created(path, TASK.identity).close()
     os.chmod(path, 0o444)
     os.chmod(tmp_path, 0o555)
-    for parent in tmp_path.parents[:2]:
-        os.chmod(parent, 0o755)
     script = textwrap.dedent(f"""
-        import os, sqlite3, pathlib
+        import pathlib
         from gaitlab.search.identity import Identity
         from gaitlab.search.ledger_file import reopened
         from gaitlab.errors import RunFolderError
+        from tests.faults.one_search import give_up_privileges
         identity = Identity({TASK.identity.robot_name!r}, {TASK.identity.robot_hash!r}, {TASK.identity.code_version!r})
-        if os.getuid() == 0:
-            os.setgid(65534); os.setuid(65534)
+        give_up_privileges()
         try:
             reopened(pathlib.Path({str(path)!r}), identity)
         except RunFolderError as error:
