@@ -73,7 +73,7 @@ buffer_mL = 40
 
 [ring]
 stages = {legs}                     # odd, or the ring latches
-port_mL = 0.6                  # air in port, channel and stub of one output
+port_mL = 0.6                  # air in port, channel and tube end of one output
 control_mL = 0.05              # air in the control chamber of the next valve
 
 # One of: square_mm | width_mm + height_mm | bore_mm (each with length_mm), sonic_conductance_dm3_s_bar + critical_ratio,
