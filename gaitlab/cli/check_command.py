@@ -63,6 +63,7 @@ def summary(file: RobotFile) -> dict[str, Any]:
         "blocks": [block.name for block in robot.body.blocks],
         "mass_g": mass_kg(robot) * 1e3,
         "wirings": {"raw": space.raw, "distinct": space.distinct},
+        "notes": list(robot.notes),
         "warnings": [*file.warnings, *air_warnings(robot), *body_warnings(robot)],
     }
 
@@ -89,6 +90,7 @@ def _print_human(facts: dict[str, Any]) -> None:
             ("blocks", " ".join(facts["blocks"])),
             ("mass", f"{facts['mass_g']:.4g} g without tubes and fittings"),
             ("wirings", f"{facts['wirings']['raw']} in all, {facts['wirings']['distinct']} distinct"),
+            *(("file says", note) for note in facts["notes"]),
         ]
     )
     for text in facts["warnings"]:

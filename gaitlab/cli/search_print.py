@@ -34,6 +34,7 @@ def print_search(summary: SearchSummary, task: SearchTask) -> None:
             ("score", f"{MEANING[task.objective]} [{UNITS[task.objective]}]; {TIE_RULE}"),
             *_screening_lines(summary),
             *((f"note {number}", note) for number, note in enumerate(facts["notes"], start=1)),
+            *(("robot file says", note) for note in task.robot.notes),
             ("simulated", f"{facts['simulated_s']:.0f} s in {facts['wall_s']:.0f} s"),
             ("folder", facts["folder"]),
         ]
