@@ -111,3 +111,11 @@ def test_json_of_new_names_the_file(tmp_path: Path) -> None:
 
 def test_robots_of_the_readme_exist() -> None:
     assert {"tray_row5", "hex6_ring3"} <= {path.stem for path in ROBOTS}
+
+
+def test_check_passes_on_what_the_file_says_of_itself() -> None:
+    path = ROOT / "robots" / "quad_spine.toml"
+    notes = read_robot(path).robot.notes
+    assert any("engines" in note for note in notes)
+    assert json.loads(gaitlab("check", str(path), "--json").out)["notes"] == list(notes)
+    assert all(note in gaitlab("check", str(path)).out for note in notes)
