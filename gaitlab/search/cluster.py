@@ -84,13 +84,23 @@ def _workers_there(client: Any, address: str) -> int:
 
 def _refuse_other_code(client: Any) -> None:
     ours = code_version()
-    others = {worker: theirs for worker, theirs in client.run(code_version).items() if theirs != ours}
+    others = {place: theirs for place, theirs in _versions(client).items() if theirs != ours}
     if others:
         worker, theirs = next(iter(others.items()))
         rule = f"of workers with this code of the models (version {ours})"
         raise InputError(
             must("--cluster", rule, f"{theirs} on {worker}", "install the same gaitlab and libraries there")
         )
+
+
+def _versions(client: Any) -> dict[str, str]:
+    """Versions on the scheduler and on every worker: each of them unpacks the jobs, so each needs gaitlab."""
+    try:
+        return {"the scheduler": client.run_on_scheduler(code_version), **client.run(code_version)}
+    except Exception as error:  # whatever the other side raised, most often that there is no module gaitlab
+        why = (str(error).splitlines() or [type(error).__name__])[0]
+        rule = "a cluster with gaitlab installed on its scheduler and on every worker"
+        raise InputError(must("--cluster", rule, why, "install the same gaitlab and libraries there")) from error
 
 
 def _losses() -> tuple[type[BaseException], ...]:

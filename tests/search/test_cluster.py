@@ -154,6 +154,18 @@ def test_workers_with_other_code_are_refused(tmp_path: Path, monkeypatch: pytest
             cluster_workers(by_hash, address)
 
 
+class WithoutGaitlab:
+    """Stands for a client whose scheduler has no gaitlab: what dask raises then comes back to the caller."""
+
+    def run_on_scheduler(self, function: object) -> str:
+        raise ModuleNotFoundError("No module named 'gaitlab'")
+
+
+def test_a_scheduler_without_gaitlab_is_told_before_any_walk() -> None:
+    with pytest.raises(InputError, match="gaitlab installed on its scheduler and on every worker"):
+        cluster._refuse_other_code(WithoutGaitlab())
+
+
 def certificate(folder: Path) -> Certificates:
     """A certificate for loopback that vouches for itself, made for this test alone."""
     cert, key = folder / "cert.pem", folder / "key.pem"
