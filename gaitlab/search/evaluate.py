@@ -6,7 +6,7 @@ import json
 import math
 import time
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 from functools import lru_cache
 from typing import TypeAlias
 
@@ -58,20 +58,11 @@ def evaluate(job: Job) -> Evaluation:
     from gaitlab.gait.walk import walk
 
     begin = time.perf_counter()
-    robot, how = robot_of(job.document_json), job.settings
+    robot = robot_of(job.document_json)
     solved = None
     try:
         ring, solved = _ring_of(job, robot)
-        done, _ = walk(
-            robot,
-            job.wiring,
-            ring,
-            engine=how.engine,
-            step_s=how.step_s,
-            inertia_factor=how.inertia_factor,
-            periods=how.periods,
-            nudge_m=how.nudge_m,
-        )
+        done, _ = walk(robot, job.wiring, ring, **asdict(job.settings))
     except InputError as error:
         done = failed_walk(job, REFUSED, str(error))
     return Evaluation(done, time.perf_counter() - begin, solved)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import asdict, dataclass, replace
 from pathlib import Path
 
 from gaitlab.gait.records import Trace
@@ -31,18 +31,9 @@ def traced(job: Job) -> Final:
     from gaitlab.gait.walk import walk
     from gaitlab.ring.solve import ring_run
 
-    robot, how = robot_of(job.document_json), job.settings
+    robot = robot_of(job.document_json)
     ring = ring_run(robot, job.wiring)
-    _, trace = walk(
-        robot,
-        job.wiring,
-        ring,
-        engine=how.engine,
-        step_s=how.step_s,
-        inertia_factor=how.inertia_factor,
-        periods=how.periods,
-        trace_hz=TRACE_HZ,
-    )
+    _, trace = walk(robot, job.wiring, ring, **asdict(job.settings), trace_hz=TRACE_HZ)
     return Final(ring, trace)
 
 

@@ -15,7 +15,7 @@ SHORT_PERIODS = 2
 class WalkSettings:
     """Engine and numerics of a walk; None means as the robot file says. `periods` None walks until the travel has settled.
 
-    `nudge_m` moves the start by that much, for rechecks.
+    `nudge_m` moves the start by that much, for rechecks. The fields are keyword arguments of `gaitlab.gait.walk.walk`.
     """
 
     engine: str = "pybullet"

@@ -40,10 +40,10 @@ def test_free_oscillation_has_the_frequency_of_a_pendulum_on_a_spring(engine: st
     stiffness, tip, size, length = 0.05, 0.05, 0.03, 0.032
     bellows = bending(segments=1, stiffness=stiffness, bend_damping_s=1e-4, axial_N_m=4e4)
     world = opened(cantilever(bellows, tip_kg=tip, toward="left", tip_size_m=size), engine)
-    stub = 0.5 * bellows.mass_kg
+    piece = 0.5 * bellows.mass_kg
     arm, radius = 0.5 * length, 0.5 * bellows.diameter_m
     inertia = tip * (arm**2 + size**2 / 6.0)
-    inertia += stub * ((0.5 * arm) ** 2 + arm**2 / 12.0 + radius**2 / 4.0)
+    inertia += piece * ((0.5 * arm) ** 2 + arm**2 / 12.0 + radius**2 / 4.0)
     rate = world.settings.step_s
     push = 3e3 * np.ones((round(0.05 / rate), 1))
     assert advance(world, push) == ""
