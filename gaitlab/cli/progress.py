@@ -44,6 +44,11 @@ class Progress:
         self._note = self._note if note is None else note
         self.refresh()
 
+    def note(self, text: str) -> None:
+        """Replaces the text behind the bar without a step."""
+        self._note = text
+        self.refresh()
+
     def refresh(self) -> None:
         """Redraws the bar if it is due."""
         elapsed = self._clock() - self._start

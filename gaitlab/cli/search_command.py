@@ -35,7 +35,7 @@ from gaitlab.search.run import SearchTask, Step
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.strategies.choice import STRATEGIES, StrategyChoice, strategy_of
 from gaitlab.search.strategies.closing import BEST
-from gaitlab.search.strategies.process_search import default_budget
+from gaitlab.search.strategies.screen_search import default_budget
 from gaitlab.search.summary import DONE, INTERRUPTED, SearchSummary
 from gaitlab.search.whole import SearchPlan, search_robot
 from gaitlab.search.workers import Workers, local_workers
@@ -56,8 +56,9 @@ EXIT_INTERRUPTED = 130
 @click.option(
     "--budget",
     type=int,
-    help="Walks that the strategy may spend; default: as many as it wants. On top, except with exhaustive, come settled walks of the "
-    f"smooth waves and of the reversed waves of the {BEST} best where they are missing, and always those of --finalists.",
+    help="Walks that the strategy may spend (screen: besides its coarse ones); default: as many as it wants. On top, except with "
+    f"exhaustive, come settled walks of the smooth waves and of the reversed waves of the {BEST} best where they are "
+    "missing, and always those of --finalists.",
 )
 @workers_option
 @click.option(
@@ -96,11 +97,13 @@ def command(robot_path: Path, as_json: bool, pictures: bool, **given: Any) -> No
     """Find the wiring that walks best: which ring output goes to which leg.
 
     Every distinct wiring of the file's limits is walked until its travel per period has settled, and ranked beside its reversed
-    wave. Refused (exit 2): limits that leave no wiring, a budget under one, a folder that holds another search.
+    wave. For large spaces: screen (coarse walks of all or thousands of wirings, settled ones for those that may be the best), gp
+    (a Gaussian process over wirings picks short walks), race (short walks for all), random. Refused (exit 2): limits that
+    leave no wiring, a budget under one, a folder that holds another search.
 
     \b
       gaitlab search robots/tray_row5.toml
-      gaitlab search robots/tray_row7.toml --strategy gp --budget 120 --workers 2
+      gaitlab search robots/tray_row7.toml --strategy screen --workers 2
     """
     file = read_robot(robot_path)
     require_odd_ring(file.robot)
@@ -135,7 +138,10 @@ def command(robot_path: Path, as_json: bool, pictures: bool, **given: Any) -> No
 def _warn_of_many(choice: StrategyChoice, task: SearchTask) -> None:
     if choice.name == "exhaustive" and choice.budget is None and task.space.distinct > MANY:
         few = default_budget(task.space)
-        warn(f"{task.space.distinct} wirings will be walked; --strategy gp looks for the best with about {few} walks")
+        warn(
+            f"{task.space.distinct} wirings will be walked; --strategy screen looks for the best with coarse walks and about {few} "
+            "settled ones"
+        )
 
 
 @contextmanager
@@ -189,13 +195,22 @@ def _certificates(given: dict[str, Any]) -> Certificates | None:
 
 
 class _Watcher:
-    """Moves the bar and keeps the best so far in its note."""
+    """Moves the bar and keeps the best so far in its note; coarse walks only change the note, they are over so much sooner."""
 
     def __init__(self, bar: Progress, objective: str) -> None:
         self._bar, self._objective = bar, objective
         self._best: float | None = None
+        self._coarse = 0
+        self._begun = False
 
     def __call__(self, step: Step) -> None:
+        if step.ask.coarse:
+            self._coarse += 1
+            self._bar.note(f"{self._coarse} coarse walks")
+            return
+        if self._coarse and not self._begun:
+            self._bar.advance(0)
+        self._begun = True
         note = None
         if step.score.value == step.score.value and (self._best is None or step.score.value > self._best):
             self._best = step.score.value

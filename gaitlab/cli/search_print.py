@@ -12,6 +12,7 @@ from gaitlab.search.objective import MEANING, SCALE, UNITS
 from gaitlab.search.ranking import Ranked
 from gaitlab.search.ranking_table import SMOOTH_WORDS
 from gaitlab.search.run import SearchTask
+from gaitlab.search.settings import SETTLED
 from gaitlab.search.summary import DONE, TIE_RULE, SearchSummary
 from gaitlab.trust.cautions import DISTANCES
 
@@ -25,6 +26,7 @@ def print_search(summary: SearchSummary, task: SearchTask) -> None:
         click.echo(f"outcome: {summary.outcome}\nremedy: {summary.remedy}")
     _print_places(summary, task)
     walks = "1 walk" if facts["walks"] == 1 else f"{facts['walks']} walks"
+    walks += f", {facts['coarse_walks']} of them coarse" if facts["coarse_walks"] else ""
     failed = ", ".join(f"{count} {outcome}" for outcome, count in sorted(facts["failed"].items())) or "none"
     print_facts(
         [
@@ -74,10 +76,16 @@ def _cells(place: Ranked, objective: str) -> list[object]:
         round(place.walk.drift_m * 1e3, 2),
         round(math.degrees(place.walk.turn_rad), 2),
         place.tied_with_best,
-        place.walk.wave.direction if place.settled else "screened only",
+        place.walk.wave.direction if place.settled else f"screened only: {place.level}",
         SMOOTH_WORDS[place.smooth] or None,
-        None if back is None else f"rank {place.reversed_rank}: {back.travel_m * 1e3:.3g} mm",
+        None
+        if back is None
+        else f"rank {place.reversed_rank}: {back.travel_m * 1e3:.3g} mm{_screened(place.reversed_level)}",
     ]
+
+
+def _screened(level: str | None) -> str:
+    return "" if level == SETTLED else f" ({level})"
 
 
 def _smooth_lines(summary: SearchSummary) -> list[tuple[str, object]]:
@@ -95,7 +103,10 @@ def _smooth_lines(summary: SearchSummary) -> list[tuple[str, object]]:
 
 
 def _screening_lines(summary: SearchSummary) -> list[tuple[str, object]]:
-    if summary.screening is None:
-        return []
-    text = f"{summary.screening.rank_correlation:.3f} over the {summary.screening.pairs} wirings walked both ways"
-    return [("rank correlation of short with settled walks", text)]
+    return [
+        (
+            f"rank correlation of walks ({screening.level}) with settled ones",
+            f"{screening.rank_correlation:.3f} over the {screening.pairs} wirings walked both ways",
+        )
+        for screening in summary.screening
+    ]

@@ -81,7 +81,7 @@ def _notes(row: RankedWiring) -> str:
     if row.smooth:
         notes.append("smooth wave")
     if not row.settled:
-        notes.append("short walk")
+        notes.append("screened only")
     return ", ".join(notes)
 
 

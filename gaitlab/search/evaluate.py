@@ -6,7 +6,7 @@ import json
 import math
 import time
 from collections.abc import Callable
-from dataclasses import asdict, dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from typing import TypeAlias
 
@@ -27,7 +27,8 @@ BROKE_DOWN = "broke_down"
 class Job:
     """What an evaluation needs: the robot's document as JSON, a wiring, how to walk it, and the ledger's key for it.
 
-    `ring` are the bytes of the ring's run under the wiring's load pattern where it has been solved before.
+    `ring` are the bytes of the ring's run under the wiring's load pattern where it has been solved before. `more` are the
+    wirings that coarse bodies walk in one go with it.
     """
 
     document_json: str
@@ -35,15 +36,24 @@ class Job:
     settings: WalkSettings
     key: str
     ring: bytes | None = None
+    more: tuple[Wiring, ...] = ()
+
+    def alone(self) -> tuple[Job, ...]:
+        """One job for each of its wirings."""
+        return tuple(replace(self, wiring=wiring, more=()) for wiring in (self.wiring, *self.more))
 
 
 @dataclass(frozen=True)
 class Evaluation:
-    """The walk that a job came to, the wall time it took, and the ring's run as bytes where it was solved for it."""
+    """The walk that a job came to, the wall time it took, and the ring's run as bytes where it was solved for it.
+
+    `more` are the walks of the job's further wirings.
+    """
 
     walk: Walk
     wall_s: float
     ring: bytes | None = None
+    more: tuple[Walk, ...] = ()
 
 
 Evaluate: TypeAlias = Callable[[Job], Evaluation]
@@ -53,16 +63,21 @@ def evaluate(job: Job) -> Evaluation:
     """Solves the ring under the job's wiring and walks the robot on its waves.
 
     A combination that a model refuses ends as the outcome ``refused`` with the refusal as remedy, so that one wiring
-    cannot end a search.
+    cannot end a search. A coarse job is walked by coarse bodies.
     """
     from gaitlab.gait.walk import walk
 
     begin = time.perf_counter()
     robot = robot_of(job.document_json)
+    if job.settings.coarse:
+        from gaitlab.search.coarse import coarse_walks_of
+
+        first, *rest = coarse_walks_of(job.document_json, robot, (job.wiring, *job.more))
+        return Evaluation(first, time.perf_counter() - begin, more=tuple(rest))
     solved = None
     try:
         ring, solved = _ring_of(job, robot)
-        done, _ = walk(robot, job.wiring, ring, **asdict(job.settings))
+        done, _ = walk(robot, job.wiring, ring, **job.settings.arguments())
     except InputError as error:
         done = failed_walk(job, REFUSED, str(error))
     return Evaluation(done, time.perf_counter() - begin, solved)
@@ -89,12 +104,21 @@ class Guarded:
     """An evaluation that always ends as a walk: what goes wrong inside becomes an outcome, so that one wiring cannot end a search.
 
     No memory is nobody's fault: such a walk counts as ``worker_lost`` and --resume tries it again. Anything else is ``broke_down``.
+    Of several wirings that cannot be walked in one go, each is tried by itself.
     """
 
     evaluate: Evaluate
 
     def __call__(self, job: Job) -> Evaluation:
         """The job's evaluation, or its failure by name."""
+        done = self._one(job)
+        if len(done.more) == len(job.more):
+            return done
+        first, *rest = (self._one(single) for single in job.alone())
+        wall_s = done.wall_s + first.wall_s + sum(one.wall_s for one in rest)
+        return Evaluation(first.walk, wall_s, more=tuple(one.walk for one in rest))
+
+    def _one(self, job: Job) -> Evaluation:
         begin = time.perf_counter()
         try:
             return self.evaluate(job)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import asdict, dataclass, replace
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from gaitlab.gait.records import Trace
@@ -33,7 +33,7 @@ def traced(job: Job) -> Final:
 
     robot = robot_of(job.document_json)
     ring = ring_run(robot, job.wiring)
-    _, trace = walk(robot, job.wiring, ring, **asdict(job.settings), trace_hz=TRACE_HZ)
+    _, trace = walk(robot, job.wiring, ring, **job.settings.arguments(), trace_hz=TRACE_HZ)
     return Final(ring, trace)
 
 

@@ -18,6 +18,7 @@ from gaitlab.wiring.wiring import Wiring
 DECIDING_PACKAGES = ("robot", "air", "ring", "body", "wiring", "gait")
 DECIDING_MODULES = (
     "record_json.py",
+    "search/coarse.py",
     "search/evaluate.py",
     "search/objective.py",
     "search/schema.py",

@@ -61,6 +61,19 @@ class Ledger:
         with self.told_plainly() as connection:
             return connection.execute(INSERT, row_of(job, done, backwards)).rowcount == 1
 
+    @contextmanager
+    def at_once(self) -> Iterator[None]:
+        """What is written inside is written all together or, where the process dies, not at all."""
+        with self.told_plainly() as connection:
+            connection.execute("BEGIN IMMEDIATE")
+            try:
+                yield
+            except BaseException:
+                if connection.in_transaction:
+                    connection.execute("ROLLBACK")
+                raise
+            connection.execute("COMMIT")
+
     def known(self, keys: Sequence[str]) -> dict[str, Row]:
         """The rows of those keys that are there."""
         found: dict[str, Row] = {}
@@ -100,10 +113,8 @@ class Ledger:
 
     def note_equals(self, pairs: Iterable[tuple[Wiring, Wiring]]) -> None:
         """Notes wirings that are equal by symmetry to the one that was walked."""
-        with self.told_plainly() as connection:
-            connection.execute("BEGIN IMMEDIATE")
-            connection.executemany(INSERT_EQUAL, ((a.text(), b.text()) for a, b in pairs))
-            connection.execute("COMMIT")
+        with self.at_once():
+            self._connection.executemany(INSERT_EQUAL, ((a.text(), b.text()) for a, b in pairs))
 
     def forget_lost(self) -> int:
         """Drops walks whose worker died, so that they are walked again; gives back how many."""

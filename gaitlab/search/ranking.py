@@ -13,14 +13,16 @@ from gaitlab.gait.records import Walk
 from gaitlab.search.ledger import Ledger
 from gaitlab.search.objective import Score, scatter_of, tied
 from gaitlab.search.schema import walk_from, wiring_from_ledger
-from gaitlab.search.settings import SETTLED, WalkSettings
+from gaitlab.search.settings import COARSE, SETTLED, WalkSettings
 from gaitlab.wiring.smooth import SmoothWaves
 from gaitlab.wiring.wiring import Wiring
 
-# One line per wiring: its settled walk if there is one, else its longest short one, which is placed after all settled ones.
+# One line per wiring: its settled walk if there is one, else its longest short one, else its coarse one, placed in this order too.
 PLACES = """
 CREATE TEMP TABLE places AS
-    SELECT CASE status WHEN 'scored' THEN row_number() OVER (ORDER BY status DESC, level <> 'settled', {score} DESC, wiring) END
+    SELECT CASE status WHEN 'scored' THEN row_number() OVER (
+        ORDER BY status DESC, level <> 'settled', level = 'coarse', {score} DESC, wiring
+    ) END
         AS rank, id, wiring, reversed
     FROM (
         SELECT rowid AS id, status, wiring, reversed, level, {score}, row_number() OVER (
@@ -31,7 +33,7 @@ CREATE TEMP TABLE places AS
 """
 
 PLACED = """
-SELECT p.rank, w.level, w.wiring, w.walk, w.{score}, w.travel_m, w.scatter_m, w.period_s, p.reversed, r.rank, rw.walk
+SELECT p.rank, w.level, w.wiring, w.walk, w.{score}, w.travel_m, w.scatter_m, w.period_s, p.reversed, r.rank, rw.walk, rw.level
 FROM places p JOIN walks w ON w.rowid = p.id
 LEFT JOIN places r ON r.wiring = p.reversed AND r.rank IS NOT NULL LEFT JOIN walks rw ON rw.rowid = r.id
 WHERE p.rank IS NOT NULL {only} ORDER BY p.rank
@@ -45,7 +47,7 @@ WHERE p.rank IS NULL ORDER BY p.wiring
 
 @dataclass(frozen=True)
 class Ranked:
-    """One place of the ranking. `settled` is false for a wiring that was only screened by a short walk.
+    """One place of the ranking. `level` is that of its walk: not ``settled`` for a wiring that was only screened.
 
     `smooth`: 1 or −1 for a smooth wave (see `SmoothWaves`), else 0. `reversed_wiring` is None where the limits forbid it,
     the reversed wave's other fields where it was not walked. Walks are kept as their JSON and read when asked for.
@@ -55,12 +57,18 @@ class Ranked:
     wiring: Wiring
     walk_json: str
     score: Score
-    settled: bool
+    level: str
     tied_with_best: bool
     smooth: int
     reversed_wiring: Wiring | None
     reversed_rank: int | None
     reversed_walk_json: str | None
+    reversed_level: str | None
+
+    @property
+    def settled(self) -> bool:
+        """Whether its walk went on until the travel had settled."""
+        return self.level == SETTLED
 
     @cached_property
     def walk(self) -> Walk:
@@ -145,26 +153,33 @@ class Ranking:
         query = "SELECT count(*) FROM walks WHERE settings = ?"
         return int(next(self._ledger.select(query, (self._settings.text,)))[0])
 
+    def coarse(self) -> int:
+        """Number of coarse ones among those walks."""
+        query = f"SELECT count(*) FROM walks WHERE settings = ? AND level = '{COARSE}'"
+        return int(next(self._ledger.select(query, (self._settings.text,)))[0])
+
     def simulated_s(self) -> float:
         """Simulated time of all walks."""
         query = "SELECT total(simulated_s) FROM walks WHERE settings = ?"
         return float(next(self._ledger.select(query, (self._settings.text,)))[0])
 
     def _ranked(self, values: tuple[Any, ...], best: Score | None) -> Ranked:
-        rank, level, text, walk, value, travel_m, scatter_m, period_s, backwards, reversed_rank, reversed_walk = values
+        rank, level, text, walk, value, travel_m, scatter_m, period_s, backwards, *reverse = values
+        reversed_rank, reversed_walk, reversed_level = reverse
         score = self._score(value, travel_m, scatter_m, period_s)
-        settled, wiring = level == SETTLED, wiring_from_ledger(text)
+        wiring = wiring_from_ledger(text)
         return Ranked(
             rank=rank,
             wiring=wiring,
             walk_json=walk,
             score=score,
-            settled=settled,
-            tied_with_best=settled and (best is None or tied(score, best)),
+            level=level,
+            tied_with_best=level == SETTLED and (best is None or tied(score, best)),
             smooth=self._waves.direction(wiring),
             reversed_wiring=None if backwards is None else wiring_from_ledger(backwards),
             reversed_rank=reversed_rank,
             reversed_walk_json=reversed_walk,
+            reversed_level=reversed_level,
         )
 
     def _score(self, *values: float | None) -> Score:

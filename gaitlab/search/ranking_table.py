@@ -16,7 +16,7 @@ from gaitlab.search.run_files import replaced_file
 HEADER = (
     "rank", "wiring", "outcome", "settled", "score", "travel_mm_per_period", "scatter_mm", "speed_mm_s", "period_s",
     "drift_mm_per_period", "turn_deg_per_period", "slip", "air_mg_per_m", "wave", "smooth", "tied_with_best",
-    "reversed_wiring", "reversed_rank", "reversed_travel_mm_per_period",
+    "reversed_wiring", "reversed_rank", "reversed_travel_mm_per_period", "walk",
 )  # fmt: skip
 SMOOTH_WORDS = {1: "head to tail", -1: "tail to head", 0: ""}  # which way the evacuation runs along the rows
 
@@ -61,12 +61,13 @@ def _placed(place: Ranked, objective: str) -> list[str]:
         "" if place.reversed_wiring is None else place.reversed_wiring.text(),
         "" if place.reversed_rank is None else str(place.reversed_rank),
         fixed(back.get("travel_m"), 1e3),
+        place.level,
     ]
 
 
 def _failed(failure: Failure) -> list[str]:
     cells = ["", failure.wiring.text(), failure.outcome]
-    return cells + [""] * (len(HEADER) - len(cells))
+    return cells + [""] * (len(HEADER) - len(cells) - 1) + [failure.level]
 
 
 def fixed(value: float | None, scale: float = 1.0) -> str:

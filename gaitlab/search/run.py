@@ -16,7 +16,7 @@ from gaitlab.search.identity import Identity
 from gaitlab.search.ledger import Ledger
 from gaitlab.search.objective import Score, score_of
 from gaitlab.search.schema import SCORED, Row
-from gaitlab.search.settings import WalkSettings
+from gaitlab.search.settings import BUNDLE, WalkSettings
 from gaitlab.search.strategies.ask_tell import Ask, Reading, Strategy
 from gaitlab.search.workers import Workers, WorkersGone
 from gaitlab.wiring.space import WiringSpace
@@ -40,13 +40,14 @@ class SearchTask:
         """The robot's document as workers get it."""
         return json.dumps(self.document, sort_keys=True)
 
-    def lasting(self, periods: int | None) -> WalkSettings:
-        """The walk settings with another length, the same object for the same length."""
-        return self._lengths.setdefault(periods, self.settings.lasting(periods))
+    def how(self, ask: Ask) -> WalkSettings:
+        """The walk settings of an ask, the same object for the same length."""
+        wanted = self.settings.lasting(ask.periods, coarse=ask.coarse)
+        return self._levels.setdefault(wanted.level, wanted)
 
     @cached_property
-    def _lengths(self) -> dict[int | None, WalkSettings]:
-        return {self.settings.periods: self.settings}
+    def _levels(self) -> dict[str, WalkSettings]:
+        return {self.settings.level: self.settings}
 
     @classmethod
     def of(
@@ -85,7 +86,9 @@ def run_search(task: SearchTask, strategy: Strategy, ledger: Ledger, workers: Wo
     try:
         while asks := strategy.ask():
             jobs = [job_of(task, ask) for ask in asks]
-            _walk_unknown(task, ledger, workers, list(zip(asks, jobs, strict=True)), watch)
+            asked = list(zip(asks, jobs, strict=True))
+            _walk_unknown(task, ledger, workers, [pair for pair in asked if not pair[0].coarse], watch)
+            _walk_coarse(task, ledger, workers, [pair for pair in asked if pair[0].coarse], watch)
             if strategy.listens:
                 rows = ledger.known([job.key for job in jobs])
                 strategy.tell(
@@ -99,7 +102,7 @@ def run_search(task: SearchTask, strategy: Strategy, ledger: Ledger, workers: Wo
 
 def job_of(task: SearchTask, ask: Ask) -> Job:
     """The evaluation that an ask wants."""
-    how = task.lasting(ask.periods)
+    how = task.how(ask)
     return Job(task.document_json, ask.wiring, how, task.identity.key(ask.wiring, how))
 
 
@@ -116,6 +119,31 @@ def _walk_unknown(
         rings.keep(job, done)
         ledger.add(job, done, task.space.reversed(job.wiring))
         watch(_step(unknown[job.key], done, task.objective))
+
+
+def _walk_coarse(
+    task: SearchTask, ledger: Ledger, workers: Workers, asked: Sequence[tuple[Ask, Job]], watch: Watch
+) -> None:
+    """Coarse walks in bundles of the order of asking. One that is not known whole is walked whole: its numbers may hang, in their
+    last digits, on what is walked together, and must not hang on where an earlier search was interrupted."""
+    there = ledger.there([job.key for _, job in asked])
+    bundles: dict[str, Sequence[tuple[Ask, Job]]] = {}
+    for begin in range(0, len(asked), BUNDLE):
+        bundle = asked[begin : begin + BUNDLE]
+        if all(job.key in there for _, job in bundle):
+            for ask, _ in bundle:
+                watch(Step(ask, Score(NAN, NAN), "", known=True))
+        else:
+            bundles[bundle[0][1].key] = bundle
+    jobs = [replace(first, more=tuple(job.wiring for _, job in rest)) for (_, first), *rest in bundles.values()]
+    for job, done in workers.evaluated(jobs):
+        walks = (done.walk, *done.more) if len(done.more) == len(job.more) else [done.walk] * (1 + len(job.more))
+        share_s = done.wall_s / len(walks)
+        with ledger.at_once():
+            for (_, single), walk in zip(bundles[job.key], walks, strict=True):
+                ledger.add(single, Evaluation(walk, share_s), task.space.reversed(single.wiring))
+        for (ask, _), walk in zip(bundles[job.key], walks, strict=True):
+            watch(_step(ask, Evaluation(walk, share_s), task.objective))
 
 
 @dataclass(frozen=True)

@@ -1,4 +1,4 @@
-"""What a search tells at its end: the ranking in the units of the bench, ties, the smooth waves, how far to trust a short walk."""
+"""What a search tells at its end: the ranking in the units of the bench, ties, the smooth waves, how far to trust a screening walk."""
 
 from __future__ import annotations
 
@@ -27,7 +27,7 @@ REMEDIES = {
 TIE_RULE = "tied: scores differ by no more than their scatters together (root of the sum of squares)"
 
 BOTH_LENGTHS = """
-SELECT s.score_{0}, l.score_{0} FROM walks s JOIN walks l ON l.settings = s.settings AND l.wiring = s.wiring
+SELECT s.level, s.score_{0}, l.score_{0} FROM walks s JOIN walks l ON l.settings = s.settings AND l.wiring = s.wiring
 WHERE s.settings = ? AND s.level <> 'settled' AND l.level = 'settled' AND s.status = 'scored' AND l.status = 'scored'
 """
 # A best wiring is said to wander when it drifts by more than this share of its travel or turns by more; chosen by us.
@@ -38,8 +38,9 @@ PAIRS_MIN = 3  # a rank correlation of fewer says nothing
 
 @dataclass(frozen=True)
 class Screening:
-    """Rank correlation (Spearman) of short walks with the settled walks of the same wirings, over `pairs` of them."""
+    """Rank correlation (Spearman) of short or coarse walks with the settled walks of the same wirings, over `pairs` of them."""
 
+    level: str
     pairs: int
     rank_correlation: float
 
@@ -52,7 +53,7 @@ class SearchSummary:
     remedy: str
     places: tuple[Ranked, ...]
     smooth: tuple[Ranked, ...]
-    screening: Screening | None
+    screening: tuple[Screening, ...]
     facts: dict[str, Any]
     checked: Checked | None = None
 
@@ -83,13 +84,14 @@ def summary_of(task: SearchTask, facts: RunFacts, ranking: Ranking, ledger: Ledg
             "distinct": task.space.distinct,
             "evaluated": ranking.evaluated(),
             "walks": ranking.walks(),
+            "coarse_walks": ranking.coarse(),
             "failed": ranking.failed(),
             "best": place_facts(places[0]) if places else None,
             "ranking": [place_facts(place) for place in places],
             "tie_rule": TIE_RULE,
             "smooth_waves": [_smooth_facts(place) for place in smooth],
             "best_over_smooth_percent": best_over_smooth_percent(places, smooth),
-            "screening": None if screening is None else vars(screening),
+            "screening": [vars(one) for one in screening],
             "notes": notes_on(places, ranking),
             "simulated_s": ranking.simulated_s(),
             "wall_s": facts.wall_s,
@@ -111,6 +113,7 @@ def place_facts(place: Ranked) -> dict[str, Any]:
         "turn_deg_per_period": math.degrees(walk.turn_rad),
         "outcome": walk.outcome,
         "settled": place.settled,
+        "level": place.level,
         "tied_with_best": place.tied_with_best,
         "wave": walk.wave.direction,
         "smooth": SMOOTH_WORDS[place.smooth] or None,
@@ -149,10 +152,13 @@ def best_over_smooth_percent(places: tuple[Ranked, ...], smooth: tuple[Ranked, .
     return 100.0 * (places[0].score.value / smooth[0].score.value - 1.0)
 
 
-def screening_of(task: SearchTask, ledger: Ledger) -> Screening | None:
-    """How well short walks ranked those wirings that were walked both ways; None where there are too few."""
-    rows = list(ledger.select(BOTH_LENGTHS.format(task.objective), (task.settings.text,)))
-    if len(rows) < PAIRS_MIN:
-        return None
-    short, settled = zip(*rows, strict=True)
-    return Screening(len(rows), float(spearmanr(short, settled).statistic))
+def screening_of(task: SearchTask, ledger: Ledger) -> tuple[Screening, ...]:
+    """How well walks of each kind ranked those wirings that were also walked until they settled, where there are enough."""
+    both: dict[str, list[tuple[float, float]]] = {}
+    for level, short, settled in ledger.select(BOTH_LENGTHS.format(task.objective), (task.settings.text,)):
+        both.setdefault(level, []).append((short, settled))
+    return tuple(
+        Screening(level, len(pairs), float(spearmanr(*zip(*pairs, strict=True)).statistic))
+        for level, pairs in sorted(both.items())
+        if len(pairs) >= PAIRS_MIN
+    )

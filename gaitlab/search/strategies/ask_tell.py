@@ -12,10 +12,19 @@ from gaitlab.wiring.wiring import Wiring
 
 @dataclass(frozen=True)
 class Ask:
-    """A wanted walk: a wiring (the representative of its equals) and its length, None until the travel has settled."""
+    """A wanted walk: a wiring (the representative of its equals) and its length, None until the travel has settled.
+
+    `coarse` asks for the coarse body's walk instead of an engine's (its length is fixed).
+    """
 
     wiring: Wiring
     periods: int | None = None
+    coarse: bool = False
+
+    @property
+    def settled(self) -> bool:
+        """Whether it is the walk that a ranking goes by."""
+        return self.periods is None and not self.coarse
 
 
 @dataclass(frozen=True)

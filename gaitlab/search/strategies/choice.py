@@ -12,6 +12,7 @@ from gaitlab.search.strategies.exhaustive import Exhaustive
 from gaitlab.search.strategies.process_search import ProcessSearch
 from gaitlab.search.strategies.race import Race
 from gaitlab.search.strategies.random_draws import RandomDraws
+from gaitlab.search.strategies.screen_search import ScreenSearch
 from gaitlab.wiring.smooth import SmoothWaves
 from gaitlab.wiring.space import WiringSpace
 
@@ -40,12 +41,17 @@ def _process(choice: StrategyChoice, space: WiringSpace, waves: SmoothWaves) -> 
     return Closing(ProcessSearch(space, waves.wirings(), choice.budget, choice.seed), space, waves.wirings())
 
 
+def _screen(choice: StrategyChoice, space: WiringSpace, waves: SmoothWaves) -> Strategy:
+    return Closing(ScreenSearch(space, waves.wirings(), choice.budget, choice.seed), space, waves.wirings())
+
+
 def _random(choice: StrategyChoice, space: WiringSpace, waves: SmoothWaves) -> Strategy:
     return Closing(RandomDraws(space, choice.budget, choice.seed), space, waves.wirings())
 
 
 STRATEGIES: dict[str, Maker] = {
     "exhaustive": _exhaustive,
+    "screen": _screen,
     "race": _race,
     "gp": _process,
     "random": _random,

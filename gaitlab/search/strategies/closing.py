@@ -32,14 +32,14 @@ class Closing:
         while not asks and self._stage < 2:
             self._stage += 1
             asks = self._missing(self._owed if self._stage == 1 else self._reversed())
-        self._asked.update(ask.wiring for ask in asks if ask.periods is None)
+        self._asked.update(ask.wiring for ask in asks if ask.settled)
         return asks
 
     def tell(self, readings: Sequence[Reading]) -> None:
         """Passes on what the inner strategy asked for and keeps the settled readings."""
         if self._stage == 0:
             self._inner.tell(readings)
-        self._settled.update((r.ask.wiring, r) for r in readings if r.ask.periods is None and not r.failed)
+        self._settled.update((r.ask.wiring, r) for r in readings if r.ask.settled and not r.failed)
 
     def _missing(self, wirings: Sequence[Wiring]) -> list[Ask]:
         return [Ask(wiring) for wiring in dict.fromkeys(wirings) if wiring not in self._asked]

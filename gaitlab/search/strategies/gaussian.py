@@ -22,9 +22,10 @@ class Scale:
     deviation: float
 
 
-def likely_scale(kernel: FloatArray, readings: FloatArray, noise: float = NOISE) -> Scale:
-    """The mean of the readings, and the deviation that makes them most likely under the kernel: σ² = yᵀ K⁻¹ y / n."""
-    mean = float(np.mean(readings))
+def likely_scale(kernel: FloatArray, readings: FloatArray, noise: float = NOISE, mean: float | None = None) -> Scale:
+    """The mean of the readings where none is given, and the deviation that makes them most likely under the kernel:
+    σ² = yᵀ K⁻¹ y / n."""
+    mean = float(np.mean(readings)) if mean is None else mean
     factor = cholesky(kernel + noise * np.eye(len(readings)), lower=True, check_finite=False)
     white = solve_triangular(factor, readings - mean, lower=True, check_finite=False)
     deviation = float(np.sqrt(np.mean(white**2)))
@@ -39,14 +40,14 @@ class Posterior:
     factor: FloatArray
     weights: FloatArray
 
-    def predicted(self, kernel: FloatArray) -> tuple[FloatArray, FloatArray]:
+    def predicted(self, kernel: FloatArray, own: FloatArray | float = 1.0) -> tuple[FloatArray, FloatArray]:
         """Mean and standard deviation [unit of the readings] of wirings by their kernel rows (wirings, readings).
 
-        μ = m + k K⁻¹ (y − m), σ² = s² (1 − k K⁻¹ kᵀ) with K = kernel of the readings + noise; see Rasmussen & Williams, Gaussian
-        Processes for Machine Learning (2006), equations 2.25 and 2.26.
+        `own` is the kernel of each wiring with itself. μ = m + k K⁻¹ (y − m), σ² = s² (own − k K⁻¹ kᵀ) with K = kernel of the readings
+        + noise; see Rasmussen & Williams, Gaussian Processes for Machine Learning (2006), equations 2.25 and 2.26.
         """
         through = solve_triangular(self.factor, kernel.T, lower=True, check_finite=False)
-        variance = np.maximum(0.0, 1.0 - np.sum(through**2, axis=0))
+        variance = np.maximum(0.0, own - np.sum(through**2, axis=0))
         return self.scale.mean + kernel @ self.weights, self.scale.deviation * np.sqrt(variance)
 
 

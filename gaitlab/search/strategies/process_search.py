@@ -80,7 +80,7 @@ class ProcessSearch:
         """Refits on the short readings, keeps the settled ones for the end."""
         self._settling.tell(readings)
         for reading in readings:
-            if reading.ask.periods is not None:
+            if not reading.ask.settled:
                 self._walked.append(reading.ask.wiring)
                 self._scores.append(reading.score)
 

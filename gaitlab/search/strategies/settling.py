@@ -30,10 +30,10 @@ class Settling:
     def tell(self, readings: Sequence[Reading]) -> None:
         """Takes in readings of either length."""
         for reading in readings:
-            known = self._short if reading.ask.periods is not None else self._settled
+            known = self._settled if reading.ask.settled else self._short
             if not reading.failed:
                 known[reading.ask.wiring] = reading.score
-            elif reading.ask.periods is None:
+            elif reading.ask.settled:
                 self._failed.add(reading.ask.wiring)
 
     def ask(self) -> list[Ask]:
