@@ -12,6 +12,7 @@ from __future__ import annotations
 from dataclasses import dataclass, fields
 
 import numpy as np
+from numpy.typing import NDArray
 
 from gaitlab.body.coarse_frames import FREE, BoolArray, FloatArray, Frames, IntArray, Skeleton, turned
 from gaitlab.body.records import GRAVITY_M_S2, BodyModel
@@ -123,7 +124,8 @@ class CoarseBodies:
     def _solved(self, start: _State, vacuum_Pa: FloatArray, step_s: FloatArray) -> tuple[_State, BoolArray]:
         """The state at the end of the step, and for which copies Newton's method came to an end."""
         state = start.of(np.arange(len(step_s)))
-        before = self._skeleton.points(self._skeleton.frames(state.place_m, state.turn, state.joint))
+        frames, points = self._placed(state)
+        before = points.copy()
         step = _Step(
             torque=vacuum_Pa @ self._per_Pa.T,
             joint=start.joint,
@@ -132,30 +134,40 @@ class CoarseBodies:
         )
         moving, solved = np.arange(len(step_s)), np.zeros(len(step_s), dtype=bool)
         for _ in range(ITERATIONS):
-            moved = self._newton(state, step, moving)
-            done = np.max(np.abs(moved), axis=1) <= CLOSE
-            solved[moving[done]] = True
-            moving = moving[~done]
+            held = self._held(points, state.give_m[moving])
+            moved = self._newton(state, step, moving, frames, points)
+            frames, points = self._placed(state.of(moving))
+            same = np.all(held == self._held(points, state.give_m[moving]), axis=(1, 2))
+            going = ~same | (np.max(np.abs(moved), axis=1) > CLOSE)
+            solved[moving[~going]] = True
+            moving, frames, points = moving[going], frames.of(going), points[going]
             if not len(moving):
                 break
-        frames = self._skeleton.frames(state.place_m, state.turn, state.joint)
-        after = self._skeleton.points(frames)
+        _, after = self._placed(state)
         push = self._push(after)
         stretch = np.linalg.norm(state.give_m, axis=-1) + 1e-300
         state.give_m *= np.minimum(1.0, push / self._along / stretch)[..., None]
         state.speed_m_s = (after - before) / step_s[:, None, None]
         return state, solved
 
+    def _placed(self, state: _State) -> tuple[Frames, FloatArray]:
+        """Link frames and points of a state."""
+        frames = self._skeleton.frames(state.place_m, state.turn, state.joint)
+        return frames, self._skeleton.points(frames)
+
+    def _held(self, points_m: FloatArray, give_m: FloatArray) -> NDArray[np.int8]:
+        """(B, C, 2): whether each sphere touches the ground, and whether it slides; a step is not solved while this changes."""
+        push = self._push(points_m)
+        return np.stack([push > 0.0, np.linalg.norm(give_m, axis=-1) * self._along > push], axis=-1).astype(np.int8)
+
     def _push(self, points_m: FloatArray) -> FloatArray:
         """How hard the ground pushes each sphere up, (B, C) [N]."""
         sunk = self._radius - points_m[:, : self._contacts, 2]
         return np.asarray(self._into * np.maximum(sunk, 0.0))
 
-    def _newton(self, state: _State, step: _Step, some: IntArray) -> FloatArray:
-        """One iteration for some of the state's copies; gives back their moves (B, n)."""
+    def _newton(self, state: _State, step: _Step, some: IntArray, frames: Frames, points: FloatArray) -> FloatArray:
+        """One iteration for some of the state's copies, whose frames and points are given; gives back their moves (B, n)."""
         place, turn, joint = state.place_m[some], state.turn[some], state.joint[some]
-        frames = self._skeleton.frames(place, turn, joint)
-        points = self._skeleton.points(frames)
         sole = points.copy()
         sole[:, : self._contacts, 2] -= self._radius
         jacobian = self._skeleton.jacobian(frames, sole)

@@ -28,6 +28,10 @@ class Frames:
     turn: FloatArray
     axis: FloatArray
 
+    def of(self, copies: BoolArray) -> Frames:
+        """The frames of some copies."""
+        return Frames(self.origin_m[copies], self.turn[copies], self.axis[copies])
+
 
 @dataclass(frozen=True)
 class Generation:

@@ -73,6 +73,19 @@ def test_walks_are_counted_beside_wirings(search: Any, tmp_path: Path) -> None:
     assert f"24 distinct, {wirings} walked in {walks} walks" in again.out
 
 
+def test_screening_is_told_with_how_well_it_ranked(search: Any, tmp_path: Path) -> None:
+    facts = json.loads(search("--strategy", "screen", "--json").out)
+    assert facts["coarse_walks"] == facts["evaluated"] == 24 < facts["walks"]
+    (screening,) = facts["screening"]
+    assert screening["level"] == "coarse" and screening["pairs"] == facts["walks"] - 24
+    assert screening["rank_correlation"] == pytest.approx(1.0)
+    assert {place["level"] for place in facts["ranking"]} == {"settled", "coarse"}
+    said = search("--strategy", "screen", "--resume").out
+    assert "24 of them coarse" in said and "rank correlation of walks (coarse) with settled ones" in said
+    header, *lines = (tmp_path / "run" / "ranking.csv").read_text(encoding="utf-8").splitlines()
+    assert header.endswith(",walk") and [line.rsplit(",", 1)[1] for line in lines][-1] == "coarse"
+
+
 def test_help_says_what_comes_on_top_of_a_budget() -> None:
     said = " ".join(gaitlab("search", "--help").out.split())
     assert "Walks that the strategy may spend" in said

@@ -9,7 +9,7 @@ import pytest
 from search.fakes import task_of
 from wiring.robots import row_document
 
-from gaitlab.search.evaluate import BROKE_DOWN, REFUSED, WORKER_LOST, Evaluation, Guarded, Job, evaluate
+from gaitlab.search.evaluate import BROKE_DOWN, REFUSED, WORKER_LOST, Evaluation, Guarded, Job, evaluate, failed_walk
 from gaitlab.search.run import SearchTask, job_of
 from gaitlab.search.settings import WalkSettings
 from gaitlab.search.strategies.ask_tell import Ask
@@ -84,6 +84,54 @@ def test_what_a_model_refuses_is_named() -> None:
     """Half a second a step leaves no room for a period's shape."""
     walk = evaluate(dataclasses.replace(job(), settings=WalkSettings(step_s=0.5))).walk
     assert walk.outcome == REFUSED and "at least 20 steps" in walk.remedy
+
+
+def coarse_job(wirings: list[Wiring], task: SearchTask = TASK) -> Job:
+    return dataclasses.replace(job_of(task, Ask(wirings[0], coarse=True)), more=tuple(wirings[1:]))
+
+
+@pytest.mark.slow
+def test_coarse_walks_repeat_to_the_bit_here_and_in_a_worker() -> None:
+    """Also after the rings have been solved for other wirings: what a process remembers changes nothing."""
+    bundle = coarse_job(list(TASK.space)[3:9])
+    workers = local_workers(Guarded(evaluate), 1)
+    ((_, there),) = workers.evaluated([bundle])
+    workers.close()
+    evaluate(coarse_job(list(TASK.space)[:3]))
+    here = evaluate(bundle)
+    assert repr((here.walk, here.more)) == repr((there.walk, there.more))
+    assert [walk.outcome for walk in (here.walk, *here.more)] == ["walked"] * 6
+
+
+def test_turning_the_ring_changes_no_coarse_travel_and_equal_tubes_share_one_ring() -> None:
+    turned = evaluate(coarse_job([SMOOTH, SMOOTH.turned(1, 5), SMOOTH.turned(3, 5)]))
+    travels = [walk.travel_m for walk in (turned.walk, *turned.more)]
+    assert travels == pytest.approx([travels[0]] * 3, rel=0.05)
+    assert len({walk.period_s for walk in (turned.walk, *turned.more)}) == 1
+
+
+def test_a_ring_that_does_not_start_is_an_outcome_of_coarse_walks_too() -> None:
+    document = row_document(5, 5)
+    document["ring"]["valve"]["threshold_kPa"] = 70
+    bundle = dataclasses.replace(coarse_job(list(TASK.space)[:2]), document_json=json.dumps(document))
+    done = evaluate(bundle)
+    assert {walk.outcome for walk in (done.walk, *done.more)} == {evaluate(job(task=weak(document))).walk.outcome}
+
+
+def weak(document: dict[str, object]) -> SearchTask:
+    return dataclasses.replace(TASK, document=document)
+
+
+def test_a_bundle_that_breaks_down_is_tried_one_by_one() -> None:
+    wirings = list(TASK.space)[:4]
+
+    def evaluated(job: Job) -> Evaluation:
+        if job.more or job.wiring == wirings[2]:
+            raise ZeroDivisionError("a fault")
+        return Evaluation(failed_walk(job, "walked", ""), 1.0)
+
+    done = Guarded(evaluated)(coarse_job(wirings))
+    assert [walk.outcome for walk in (done.walk, *done.more)] == ["walked", "walked", BROKE_DOWN, "walked"]
 
 
 def raising(error: BaseException) -> Guarded:

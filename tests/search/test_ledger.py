@@ -23,9 +23,10 @@ from gaitlab.search import ledger as ledger_module
 from gaitlab.search.evaluate import WORKER_LOST, Evaluation, Job, failed_walk
 from gaitlab.search.identity import Identity, code_version
 from gaitlab.search.ledger_file import LEDGER_FILE, created, reopened
-from gaitlab.search.run import SearchTask
+from gaitlab.search.run import SearchTask, job_of
 from gaitlab.search.schema import COLUMNS, SCHEMA, row_of
 from gaitlab.search.settings import WalkSettings
+from gaitlab.search.strategies.ask_tell import Ask
 from gaitlab.wiring.wiring import Wiring
 
 TASK = task_of()
@@ -306,3 +307,19 @@ def test_code_version_does_not_hang_on_reports_and_strategies(tmp_path: Path, mo
     for name in ("report/sheet.py", "search/strategies/race.py", "search/run.py", "cli/main.py"):
         (package / name).write_text("", encoding="utf-8")
     assert code_version.__wrapped__() == code_version()
+
+
+def test_rows_of_a_bundle_are_written_together_or_not_at_all(tmp_path: Path) -> None:
+    task = task_of()
+    jobs = [job_of(task, Ask(wiring, coarse=True)) for wiring in task.space]
+    with created(tmp_path / LEDGER_FILE, task.identity) as ledger:
+        with pytest.raises(KeyboardInterrupt), ledger.at_once():
+            ledger.add(jobs[0], by_hash(jobs[0]), None)
+            raise KeyboardInterrupt
+        assert ledger.number_of_walks() == 0
+        with ledger.at_once():
+            for job in jobs:
+                ledger.add(job, by_hash(job), None)
+    with reopened(tmp_path / LEDGER_FILE, task.identity) as ledger:
+        assert ledger.number_of_walks() == 24
+        assert {level for (level,) in ledger.select("SELECT level FROM walks")} == {"coarse"}

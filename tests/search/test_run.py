@@ -23,12 +23,13 @@ from search.fakes import (
 )
 
 from gaitlab.errors import InputError
-from gaitlab.search.evaluate import WORKER_LOST, Evaluate, Evaluation, Job
+from gaitlab.search.evaluate import WORKER_LOST, Evaluate, Evaluation, Guarded, Job
 from gaitlab.search.ledger_file import LEDGER_FILE, created, reopened
 from gaitlab.search.ranking import Ranked, Ranking
 from gaitlab.search.ranking_table import write_ranking
 from gaitlab.search.run import SearchTask, Step, job_of, run_search
-from gaitlab.search.strategies.ask_tell import Ask
+from gaitlab.search.settings import BUNDLE
+from gaitlab.search.strategies.ask_tell import Ask, Reading
 from gaitlab.search.strategies.choice import STRATEGIES, StrategyChoice, strategy_of
 from gaitlab.search.workers import ExecutorWorkers, InProcess, Workers, WorkersGone, WorkKills, local_workers
 from gaitlab.wiring.smooth import SmoothWaves
@@ -129,8 +130,8 @@ def test_contract_of_every_strategy(tmp_path: Path, name: str) -> None:
     """Asks only for allowed representatives, each length of each once, repeats with its seed, ends."""
     task = task_of(6, 5, inlets_per_output_max=2)
     choice = StrategyChoice(name, 40, 3)
-    first = searched(tmp_path / "a", InProcess(by_hash), task=task, choice=choice)
-    again = searched(tmp_path / "b", InProcess(by_hash), task=task, choice=choice)
+    first = searched(tmp_path / "a", InProcess(Guarded(by_hash)), task=task, choice=choice)
+    again = searched(tmp_path / "b", InProcess(Guarded(by_hash)), task=task, choice=choice)
     assert first == again
     with sqlite3.connect(tmp_path / "a" / LEDGER_FILE) as connection:
         rows = connection.execute("SELECT wiring, level FROM walks").fetchall()
@@ -157,16 +158,17 @@ def test_the_strategy_keeps_its_budget_and_closing_walks_come_on_top(
 
     monkeypatch.setattr(inner, "ask", noted)
     with created(tmp_path / LEDGER_FILE, task.identity) as ledger:
-        run_search(task, strategy, ledger, InProcess(by_hash), heard.append)
-    assert 1 <= len(spent) <= budget and [step.ask for step in heard[: len(spent)]] == spent
-    assert len(spent) == budget or name in ("race", "gp"), "only a race and a screening may end early"
+        run_search(task, strategy, ledger, InProcess(Guarded(by_hash)), heard.append)
+    engine = [ask for ask in spent if not ask.coarse]
+    assert 1 <= len(engine) <= budget and [step.ask for step in heard[: len(spent)]] == spent
+    assert len(engine) == budget or name in ("race", "gp", "screen"), "only these may end early"
     on_top = [] if name == "exhaustive" else owed(heard[: len(spent)], waves.wirings(), task)
     assert [step.ask for step in heard[len(spent) :]] == on_top
 
 
 def owed(steps: list[Step], smooth: Sequence[Wiring], task: SearchTask) -> list[Ask]:
     """What has to come after these steps, worked out anew."""
-    settled = {step.ask.wiring: step.score.value for step in steps if step.ask.periods is None}
+    settled = {step.ask.wiring: step.score.value for step in steps if step.ask.settled}
     missing = [wiring for wiring in smooth if wiring not in settled]
     for wiring in missing:
         done = by_hash(job_of(task, Ask(wiring)))
@@ -180,19 +182,85 @@ def owed(steps: list[Step], smooth: Sequence[Wiring], task: SearchTask) -> list[
 @pytest.mark.parametrize("name", STRATEGIES)
 def test_same_bytes_for_one_and_two_workers(tmp_path: Path, name: str) -> None:
     choice = StrategyChoice(name, 20, 1)
-    alone = searched(tmp_path / "a", InProcess(by_hash), choice=choice)
-    two = searched(tmp_path / "b", local_workers(by_hash, 2), choice=choice)
+    alone = searched(tmp_path / "a", InProcess(Guarded(by_hash)), choice=choice)
+    two = searched(tmp_path / "b", local_workers(Guarded(by_hash), 2), choice=choice)
     assert alone == two
 
 
 @pytest.mark.parametrize("name", STRATEGIES)
 def test_interrupted_and_resumed_gives_the_same_bytes(tmp_path: Path, name: str) -> None:
     task, choice = task_of(6, 5, inlets_per_output_max=2), StrategyChoice(name, 40, 2)
-    whole = searched(tmp_path / "a", InProcess(by_hash), task=task, choice=choice)
-    searched(tmp_path / "b", InProcess(interrupting(by_hash, after=17)), task=task, choice=choice)
+    after = 7 * BUNDLE + 17 if name == "screen" else 17
+    whole = searched(tmp_path / "a", InProcess(Guarded(by_hash)), task=task, choice=choice)
+    searched(tmp_path / "b", InProcess(Guarded(interrupting(by_hash, after=after))), task=task, choice=choice)
     with sqlite3.connect(tmp_path / "b" / LEDGER_FILE) as connection:
-        assert connection.execute("SELECT count(*) FROM walks").fetchone() == (17,)
-    assert searched(tmp_path / "b", InProcess(by_hash), task=task, choice=choice, resume=True) == whole
+        (rows,) = connection.execute("SELECT count(*) FROM walks").fetchone()
+    assert rows == (7 * BUNDLE if name == "screen" else 17), "coarse walks are written down bundle by bundle"
+    assert searched(tmp_path / "b", InProcess(Guarded(by_hash)), task=task, choice=choice, resume=True) == whole
+
+
+def test_a_bundle_that_is_not_known_whole_is_walked_whole_and_doubles_nothing(tmp_path: Path) -> None:
+    """Coarse numbers may hang on what is walked together: the bundle after a loss is the bundle before it."""
+    asks = [Ask(wiring, coarse=True) for wiring in ROW.space]
+    bundles: list[tuple[Wiring, ...]] = []
+
+    def noted(job: Job) -> Evaluation:
+        bundles.append((job.wiring, *job.more))
+        return Guarded(by_hash)(job)
+
+    with created(tmp_path / LEDGER_FILE, ROW.identity) as ledger:
+        run_search(ROW, Scripted([asks]), ledger, InProcess(noted), quiet)
+        with ledger.told_plainly() as connection:
+            connection.execute("DELETE FROM walks WHERE wiring = ?", (asks[3].wiring.text(),))
+        run_search(ROW, Scripted([asks]), ledger, InProcess(noted), quiet)
+        assert bundles == [tuple(ask.wiring for ask in asks)] * 2
+        assert ledger.number_of_walks() == len(asks)
+        run_search(ROW, Scripted([asks]), ledger, InProcess(noted), quiet)
+        assert len(bundles) == 2
+
+
+def test_a_lost_bundle_is_a_loss_of_every_wiring_in_it(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("GAITLAB_TEST_PARENT", str(os.getpid()))
+    asks = [Ask(wiring, coarse=True) for wiring in ROW.space]
+    with created(tmp_path / LEDGER_FILE, ROW.identity) as ledger:
+        run_search(ROW, Scripted([asks]), ledger, local_workers(kills_every_worker, 1), quiet)
+        failures = list(Ranking(ledger, WAVES, "travel", ROW.settings).failures())
+        assert [failure.outcome for failure in failures] == [WORKER_LOST] * 24
+        assert ledger.forget_lost() == 24
+
+
+def test_coarse_walks_take_their_places_after_all_others(tmp_path: Path) -> None:
+    wirings = list(ROW.space)
+    script: list[list[Ask]] = [
+        [Ask(wiring, coarse=True) for wiring in wirings],
+        [Ask(wiring, 2) for wiring in wirings[:6]],
+        [Ask(wiring) for wiring in wirings[:2]],
+    ]
+    with created(tmp_path / LEDGER_FILE, ROW.identity) as ledger:
+        run_search(ROW, Scripted(script), ledger, InProcess(Guarded(by_formula)), quiet)
+        ranking = Ranking(ledger, WAVES, "travel", ROW.settings)
+        levels = [place.level for place in ranking]
+        assert levels == ["settled"] * 2 + ["2 periods"] * 4 + ["coarse"] * 18
+        assert (ranking.walks(), ranking.coarse()) == (32, 24)
+        assert not any(place.tied_with_best for place in ranking if not place.settled)
+
+
+class Scripted:
+    """Asks for what it was given, batch by batch."""
+
+    listens = False
+
+    def __init__(self, batches: Sequence[Sequence[Ask]]) -> None:
+        self._batches = iter(batches)
+
+    def expected(self) -> int:
+        return 0
+
+    def ask(self) -> Sequence[Ask]:
+        return next(self._batches, ())
+
+    def tell(self, readings: Sequence[Reading]) -> None:
+        raise AssertionError("it does not listen")
 
 
 def interrupting(evaluate: Evaluate, *, after: int) -> Evaluate:

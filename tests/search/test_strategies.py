@@ -17,12 +17,15 @@ from gaitlab.search.run import SearchTask, job_of
 from gaitlab.search.strategies.ask_tell import Ask, Reading, Strategy
 from gaitlab.search.strategies.candidates import Candidates
 from gaitlab.search.strategies.closing import BEST, Closing
+from gaitlab.search.strategies.coarse_look import MOST
 from gaitlab.search.strategies.exhaustive import Exhaustive
 from gaitlab.search.strategies.gaussian import likely_scale, posterior
 from gaitlab.search.strategies.kernel import SHARPNESS, WiringKernel, pair_weights
 from gaitlab.search.strategies.process_search import ProcessSearch, default_budget
 from gaitlab.search.strategies.race import Race
 from gaitlab.search.strategies.random_draws import RandomDraws
+from gaitlab.search.strategies.screen_search import LEAST, ScreenSearch
+from gaitlab.search.strategies.screen_search import default_budget as screen_budget
 from gaitlab.search.strategies.settling import Settling
 from gaitlab.wiring.smooth import SmoothWaves, ideal_phase
 from gaitlab.wiring.space import WiringSpace
@@ -137,7 +140,7 @@ def test_process_search_finds_the_best_of_720_with_70_walks(seed: int) -> None:
     best = max(landscape(task)(Ask(wiring)) for wiring in task.space)
     told = run(ProcessSearch(task.space, (), 70, seed), landscape(task))
     assert len(told) <= 70
-    assert max(score for ask, score in told.items() if ask.periods is None) == best
+    assert max(score for ask, score in told.items() if ask.settled) == best
 
 
 def test_process_search_beats_chance_where_the_space_cannot_be_listed() -> None:
@@ -154,8 +157,91 @@ def test_process_search_bears_failed_walks() -> None:
         return float("nan") if ask.wiring.source("b") in (2, 3) else landscape(task)(ask)
 
     told = run(ProcessSearch(task.space, (), 24, 1), often_nan)
-    assert np.isfinite(max(score for ask, score in told.items() if ask.periods is None))
+    assert np.isfinite(max(score for ask, score in told.items() if ask.settled))
     assert all(np.isnan(v) for v in run(ProcessSearch(task.space, (), 24, 1), lambda ask: float("nan")).values())
+
+
+def coarsely(exact: Score, error: float) -> Score:
+    """Coarse walks that are too long by a third, offset, and off by an error that has nothing to do with the wiring's kin."""
+
+    def score(ask: Ask) -> float:
+        if not ask.coarse:
+            return exact(ask)
+        value = exact(Ask(ask.wiring))
+        return 1.3 * value + 1e-3 + error * float(np.sin(1e7 * value))
+
+    return score
+
+
+def settled_of(told: dict[Ask, float]) -> dict[Ask, float]:
+    return {ask: score for ask, score in told.items() if ask.settled}
+
+
+@pytest.mark.parametrize("error", [0.0, 3e-4, 1e-3])
+def test_screening_finds_the_best_of_720_with_14_settled_walks(error: float) -> None:
+    """The best of the landscape, 4.1 mm, is 1.3 mm above the next."""
+    task = task_of(7, 7)
+    told = run(ScreenSearch(task.space, (), None, 1), coarsely(landscape(task), error))
+    settled = settled_of(told)
+    assert len(told) - len(settled) == 720 and LEAST <= len(settled) <= screen_budget(task.space) == 14
+    assert max(settled.values()) == max(landscape(task)(Ask(wiring)) for wiring in task.space)
+
+
+def test_screening_stops_soon_where_coarse_walks_are_right_and_goes_on_where_they_are_not() -> None:
+    """On a landscape with a flat top: the better coarse walks tell the wirings apart, the sooner the rest is out of reach."""
+    task = task_of(7, 7)
+    exact = landscape(task)
+
+    def flat(ask: Ask) -> float:
+        return float(1e-3 * np.tanh(exact(ask) / 3e-3))
+
+    numbers = [
+        len(settled_of(run(ScreenSearch(task.space, (), 60, 1), coarsely(flat, error)))) for error in (0.0, 1e-4, 1e-3)
+    ]
+    assert LEAST <= numbers[0] <= numbers[1] < numbers[2]
+
+
+def test_screening_looks_at_a_part_of_a_space_that_cannot_be_listed_and_beats_chance() -> None:
+    task = task_of(9, 9)
+    told = run(ScreenSearch(task.space, (), 20, 1), coarsely(landscape(task), 1e-4))
+    coarse = [ask.wiring for ask in told if ask.coarse]
+    assert len(coarse) == len(set(coarse)) == MOST
+    drawn = max(run(RandomDraws(task.space, 400, 1), landscape(task)).values())
+    assert max(settled_of(told).values()) > drawn
+
+
+def test_screening_bears_failed_walks_of_both_kinds() -> None:
+    task = task_of(5, 5)
+
+    def often_nan(ask: Ask) -> float:
+        failed = (2, 3) if ask.coarse else (3, 4)
+        return float("nan") if ask.wiring.source("b") in failed else landscape(task)(ask)
+
+    told = run(ScreenSearch(task.space, (), 24, 1), often_nan)
+    assert np.isfinite(max(settled_of(told).values()))
+    assert len(run(ScreenSearch(task.space, (), 24, 1), lambda ask: float("nan"))) == 48
+
+
+def test_screening_ties_both_kinds_together_as_the_process_with_a_line_would() -> None:
+    """Expected settled scores against the conditional normal distribution, by plain matrix inversion."""
+    space = task_of(5, 5).space
+    wirings = list(space)
+    rng = np.random.default_rng(2)
+    coarse = dict(zip(wirings, rng.normal(size=24), strict=True))
+    search = ScreenSearch(space, (), None, 1)
+    search.tell([Reading(Ask(w, coarse=True), score, 0.0, "walked") for w, score in coarse.items()])
+    walked = {w: 1.2 * coarse[w] + 0.3 + 0.1 * rng.normal() for w in wirings[:6]}
+    mean, deviation = search._expected_of(wirings[6:], walked)
+    along = (np.array(list(coarse.values())) - np.mean(list(coarse.values()))) / np.std(list(coarse.values()))
+    kernel = WiringKernel(space)
+    features = kernel.features(wirings)
+    whole = kernel.between(features, features) + 1.0 + np.outer(along, along)
+    error = np.array([walked[w] - coarse[w] for w in wirings[:6]])
+    inverse = np.linalg.inv(whole[:6, :6] + 0.2 * np.eye(6))
+    spread = error @ inverse @ error / 6
+    np.testing.assert_allclose(mean, [coarse[w] for w in wirings[6:]] + whole[6:, :6] @ inverse @ error, rtol=1e-9)
+    left = np.diag(whole)[6:] + 0.2 - np.diag(whole[6:, :6] @ inverse @ whole[:6, 6:])
+    np.testing.assert_allclose(deviation, np.sqrt(spread * left), rtol=1e-9)
 
 
 def test_race_settles_only_those_that_may_still_win() -> None:
@@ -167,7 +253,7 @@ def test_race_settles_only_those_that_may_still_win() -> None:
         return exact(ask) + (5e-7 * np.sin(1e6 * exact(ask)) if ask.periods else 0.0)
 
     told = run(Race(task.space, None, 1), noisy)
-    settled = {ask: score for ask, score in told.items() if ask.periods is None}
+    settled = {ask: score for ask, score in told.items() if ask.settled}
     assert max(settled.values()) == max(exact(Ask(wiring)) for wiring in task.space)
     assert len(told) - len(settled) == 720 and len(settled) <= 20
 
@@ -205,7 +291,7 @@ def test_closing_walks_the_smooth_waves_and_the_reverse_of_the_best() -> None:
     task = task_of(7, 7)
     smooth = SmoothWaves.of(task.robot, task.space).wirings()
     told = run(Closing(ProcessSearch(task.space, (), 40, 1), task.space, smooth), landscape(task))
-    settled = {ask.wiring: score for ask, score in told.items() if ask.periods is None}
+    settled = {ask.wiring: score for ask, score in told.items() if ask.settled}
     assert set(smooth) <= set(settled)
     best = sorted(settled, key=lambda w: -settled[w])[:1]
     assert all(task.space.reversed(wiring) in settled for wiring in best)
@@ -234,6 +320,10 @@ def test_candidates_of_a_large_space_are_near_the_best_and_at_random() -> None:
     assert not set(candidates.near(best)) & set(pool)
 
 
+def test_screening_settles_one_in_fifty_within_bounds() -> None:
+    assert [screen_budget(WiringSpace.of(row(n, n))) for n in (3, 5, 7, 9)] == [2, 8, 14, 60]
+
+
 def test_default_budget_is_a_seventh_within_bounds() -> None:
     assert default_budget(WiringSpace.of(row(7, 7))) == 103
     assert default_budget(WiringSpace.of(row(5, 5))) == 24
@@ -243,4 +333,4 @@ def test_default_budget_is_a_seventh_within_bounds() -> None:
 def test_no_strategy_hears_of_the_order_of_evaluation() -> None:
     """A reading names its ask: nothing in it tells when it came."""
     assert {f.name for f in dataclasses.fields(Reading)} == {"ask", "score", "scatter", "outcome"}
-    assert {f.name for f in dataclasses.fields(Job)} == {"document_json", "wiring", "settings", "key", "ring"}
+    assert {f.name for f in dataclasses.fields(Job)} == {"document_json", "wiring", "settings", "key", "ring", "more"}

@@ -1,4 +1,4 @@
-"""Walks of a coarser body, for tables of hundreds and thousands of wirings that a laptop can make.
+"""Engine walks of a shorter chain, for thousands of wirings that a laptop can walk.
 
 Fewer segments a leg, a step of 2 ms, and every wiring driven with the waves of one solved ring, moved to the outputs that the
 wiring says: the small differences that tube lengths make to the load are left out. Walks are kept in a file, one JSON line
@@ -33,7 +33,7 @@ WALKED = "walked"
 
 
 @cache
-def coarse_robot(text: str, segments: int) -> Robot:
+def short_robot(text: str, segments: int) -> Robot:
     """The robot of a TOML text with so many segments a leg, at 2 ms, its slides damped half as long so that they bear the step."""
     text = text.replace("segments = 4", f"segments = {segments}").replace(
         "axial_damping_ms = 10", "axial_damping_ms = 5"
@@ -44,7 +44,7 @@ def coarse_robot(text: str, segments: int) -> Robot:
 @cache
 def one_ring(text: str, segments: int) -> tuple[dict[Source, int], RingRun]:
     """The ring under a smooth wave, and which row of its waves belongs to which output."""
-    robot = coarse_robot(text, segments)
+    robot = short_robot(text, segments)
     wiring = SmoothWaves.of(robot, WiringSpace.of(robot)).wirings()[0]
     ring = ring_run(robot, wiring)
     return {source: ring.waves.inlets.index(inlet) for inlet, source in wiring.pairs}, ring
@@ -56,17 +56,17 @@ def waves_of(text: str, segments: int, wiring: Wiring) -> Waves:
     return replace(ring.waves, vacuum_Pa=ring.waves.vacuum_Pa[np.array([row[source] for _, source in wiring.pairs])])
 
 
-def coarse_walk(job: Job, *, text: str, segments: int, periods: int) -> Evaluation:
-    walk, _ = walk_waves(coarse_robot(text, segments), waves_of(text, segments, job.wiring), periods=periods)
+def short_chain_walk(job: Job, *, text: str, segments: int, periods: int) -> Evaluation:
+    walk, _ = walk_waves(short_robot(text, segments), waves_of(text, segments, job.wiring), periods=periods)
     return Evaluation(walk, 0.0)
 
 
-class CoarseWalks:
+class ShortChainWalks:
     """Travels of every period by wiring [m], run when they are first asked for; an empty list for a walk that failed."""
 
     def __init__(self, path: Path, text: str, *, segments: int, periods: int) -> None:
         self._path = path
-        run = partial(coarse_walk, text=text, segments=segments, periods=periods)
+        run = partial(short_chain_walk, text=text, segments=segments, periods=periods)
         self._workers = local_workers(run, WORKERS)
         lines = path.read_text(encoding="utf-8").splitlines() if path.exists() else []
         self._known: dict[str, list[float]] = {}
