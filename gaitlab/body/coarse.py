@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from gaitlab.body.coarse_frames import FREE, BoolArray, FloatArray, Frames, IntArray, Skeleton, turned
 from gaitlab.body.records import GRAVITY_M_S2, BodyModel
 
-# Numerical choices, all by us: travel and order of the shipped robots' wirings hardly hang on them (tests/gait/test_coarse.py).
+# Numerical choices, all by us; tests/benchmarks/coarse_settings.py prints what hangs on them.
 SINK_M = 1e-4  # how far a foot sinks under its share of the weight
 GIVE = 1.0 / 3.0  # a foot's stiffness along the ground, for a coefficient of friction of one, over that into the ground
 CLOSE = 3e-4  # a step is solved when the last move of Newton's method, which it still makes, was below this [m, rad]

@@ -24,7 +24,7 @@ from gaitlab.ring.waves import RingRun
 from gaitlab.robot.records import Robot
 
 ENGINE = "coarse"
-# Chosen by us: finer ones rank the shipped robots' wirings no better (tests/benchmarks/search_cost.py coarse).
+# Chosen by us; tests/benchmarks/coarse_settings.py prints how finer and coarser ones rank.
 SEGMENTS = 2  # of a bellows at most
 STEPS = 64  # in a period
 SETTLE_STEPS = 20

@@ -43,7 +43,7 @@ ROOT = Path(__file__).resolve().parents[2]
 KILLS = 20
 ROBOT = ROOT / "robots" / "tray_row5.toml"
 ROWS = (100, 10_000, 100_000)
-MILLION = 600_000  # rows; the space below has 627 480 distinct wirings
+MILLION = 1_000_000  # rows
 
 
 def kills() -> None:
@@ -123,8 +123,8 @@ def ignore(step: Step) -> None:
     """Nobody watches."""
 
 
-def filled(folder: Path, rows: int) -> SearchTask:
-    task = task_of(10, 5, inlets_per_output_max=3)
+def filled(folder: Path, rows: int, *, inlets_per_output_max: int = 3) -> SearchTask:
+    task = task_of(10, 5, inlets_per_output_max=inlets_per_output_max)
     with created(folder / LEDGER_FILE, task.identity) as ledger:
         run_search(task, Exhaustive(task.space, rows), ledger, InProcess(made_up), ignore)
     return task
@@ -153,7 +153,7 @@ def memory() -> None:
 
 def resume() -> None:
     with tempfile.TemporaryDirectory() as folder:
-        task = filled(Path(folder), MILLION)
+        task = filled(Path(folder), MILLION, inlets_per_output_max=6)
         begin = time.perf_counter()
         ledger = reopened(Path(folder) / LEDGER_FILE, task.identity)
         opened = time.perf_counter() - begin

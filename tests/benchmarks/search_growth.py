@@ -12,6 +12,7 @@ import time
 import tomllib
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -22,9 +23,12 @@ from gaitlab.search.cluster import cluster_workers
 from gaitlab.search.evaluate import Evaluate, Job, evaluate
 from gaitlab.search.ledger_file import LEDGER_FILE, created
 from gaitlab.search.run import SearchTask, Step, run_search
-from gaitlab.search.settings import WalkSettings
+from gaitlab.search.settings import BUNDLE, WalkSettings
+from gaitlab.search.strategies.candidates import LISTED_MAX
 from gaitlab.search.strategies.choice import StrategyChoice, strategy_of
+from gaitlab.search.strategies.coarse_look import MOST
 from gaitlab.search.strategies.process_search import default_budget
+from gaitlab.search.strategies.screen_search import default_budget as screen_budget
 from gaitlab.search.workers import Workers, local_workers
 from gaitlab.wiring.smooth import SmoothWaves
 from gaitlab.wiring.space import WiringSpace
@@ -34,27 +38,37 @@ MEASURED = (3, 5, 7, 9)
 ON_PAPER = (11, 13, 15)
 CORES = (2, 1000)
 DAY_s = 86_400.0
+SHORT_SHARE = 0.55  # of a settled walk that a short one takes, by simulated time at periods of 1 to 2 s
 
 
 def growth() -> None:
-    """Distinct wirings exactly, seconds per settled walk measured up to nine and by a fitted power law beyond."""
+    """Distinct wirings exactly, seconds per walk measured up to nine and by fitted power laws beyond."""
     seconds = {legs: settled_walk_s(legs) for legs in MEASURED}
+    coarse = {legs: coarse_walk_s(legs) for legs in MEASURED}
     slope, level = np.polyfit(np.log(list(seconds)), np.log(list(seconds.values())), 1)
+    coarse_slope, coarse_level = np.polyfit(np.log(list(coarse)), np.log(list(coarse.values())), 1)
     print(
-        "| stages = legs | distinct wirings | CPU s a walk | walk all, 2 cores | walk all, 1000 cores | gp, walks | gp, 2 cores |"
+        "| stages = legs | distinct wirings | CPU s a walk | a coarse walk | walk all, 2 cores | walk all, 1000 cores | "
+        "screen, walks | screen, 2 cores | gp, walks | gp, 2 cores |"
     )
-    print("|---|---|---|---|---|---|---|")
+    print("|---|---|---|---|---|---|---|---|---|---|")
     for legs in (*MEASURED, *ON_PAPER):
         each = seconds.get(legs) or math.exp(level + slope * math.log(legs))
+        coarse_each = coarse.get(legs) or math.exp(coarse_level + coarse_slope * math.log(legs))
         space = WiringSpace.of(robot_from_document(tomllib.loads(row_text(legs))))
         times = [duration(space.distinct * each / cores) for cores in CORES]
-        budget = default_budget(space)
+        budget, settled = default_budget(space), screen_budget(space)
+        looked_at = space.distinct if space.distinct <= LISTED_MAX else MOST
+        screen_s = looked_at * coarse_each + settled * each
         mark = "" if legs in seconds else " (fit)"
         print(
-            f"| {legs} | {space.distinct} | {each:.2f}{mark} | {times[0]} | {times[1]} | {budget} | {duration(budget * each / 2)} |",
+            f"| {legs} | {space.distinct} | {each:.2f}{mark} | {coarse_each:.3f}{mark} | {times[0]} | {times[1]} | "
+            f"{looked_at} + {settled} | {duration(screen_s / 2)} | {budget} | {duration(SHORT_SHARE * budget * each / 2)} |",
             flush=True,
         )
-    print(f"\nCPU seconds a walk grow as stages^{slope:.2f}; distinct wirings as (N − 1)!.")
+    print(
+        f"\nCPU seconds a walk grow as stages^{slope:.2f}, of a coarse one as stages^{coarse_slope:.2f}; distinct wirings as (N − 1)!."
+    )
 
 
 def settled_walk_s(legs: int) -> float:
@@ -65,6 +79,18 @@ def settled_walk_s(legs: int) -> float:
     begin = time.process_time()
     evaluate(Job(json.dumps(document), wiring, WalkSettings(), ""))
     return time.process_time() - begin
+
+
+def coarse_walk_s(legs: int) -> float:
+    """CPU time of one coarse walk in a bundle of wirings drawn at random, its one ring left out."""
+    document = tomllib.loads(row_text(legs))
+    space, rng = WiringSpace.of(robot_from_document(document)), np.random.default_rng(1)
+    first, *rest = (space.sampled(rng) for _ in range(BUNDLE))
+    job = Job(json.dumps(document), first, WalkSettings(coarse=True), "")
+    evaluate(job)
+    begin = time.process_time()
+    evaluate(replace(job, more=tuple(rest)))
+    return (time.process_time() - begin) / BUNDLE
 
 
 def duration(seconds: float) -> str:
