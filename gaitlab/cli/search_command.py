@@ -206,7 +206,7 @@ class _Watcher:
     def __call__(self, step: Step) -> None:
         if step.ask.coarse:
             self._coarse += 1
-            self._bar.note(f"{self._coarse} coarse walks")
+            self._bar.note(f"coarse walks: {self._coarse}")
             return
         if self._coarse and not self._begun:
             self._bar.advance(0)

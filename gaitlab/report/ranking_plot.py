@@ -23,8 +23,8 @@ LABEL_MM, LABEL_PT, LINE_MM = 62.0, 8.0, 3.6
 def ranking_bars(ranking: Sequence[RankedWiring], *, limit: int = ROWS_SHOWN, title: str = "Ranking") -> Figure:
     """Travel per period [mm] of the best `limit` wirings, with the standard deviation between periods.
 
-    Hatched bars are tied with the best; diamonds are the same wirings with the wave reversed. The strip below shows
-    every wiring that walked, in order of rank.
+    Hatched bars are tied with the best, hollow ones were only screened by a short or coarse walk; diamonds are the same wirings
+    with the wave reversed. The strip below shows every wiring that walked, in order of rank.
     """
     shown = list(ranking[:limit])
     with styled():
@@ -51,13 +51,15 @@ def _draw_bars(ax: Axes, rows: Sequence[RankedWiring], labels: Sequence[str]) ->
     ax.set_ylim(len(rows) - 0.4, -0.6)
     ax.set_xlabel("travel (mm per period), whisker: scatter between periods")
     ax.set_ylabel("wiring (inlet=output), rank")
-    ax.legend(handles=_legend(), loc="lower right", bbox_to_anchor=(1.0, 1.0), ncols=3, borderaxespad=0.2)
+    handles = _legend(screened=not all(row.settled for row in rows))
+    ax.legend(handles=handles, loc="lower right", bbox_to_anchor=(1.0, 1.0), ncols=len(handles), borderaxespad=0.2)
     bare(ax, grid="x")
 
 
 def _draw_one(ax: Axes, y: int, row: RankedWiring, *, tied: bool) -> None:
     travel, scatter = MM * row.walk.travel_m, MM * row.walk.travel_scatter_m
-    ax.barh(y, travel, height=0.62, color=SKY if tied else BLUE, edgecolor=INK, lw=0.6, hatch="////" if tied else None)
+    face, edge = (SKY if tied else BLUE, INK) if row.settled else ("white", BLUE)
+    ax.barh(y, travel, height=0.62, color=face, edgecolor=edge, lw=0.6, hatch="////" if tied else None)
     if np.isfinite(scatter):
         ax.errorbar(travel, y, xerr=scatter, color=INK, capsize=2.5, lw=1.0)
     if row.reversed_walk is not None and np.isfinite(row.reversed_walk.travel_m):
@@ -67,13 +69,14 @@ def _draw_one(ax: Axes, y: int, row: RankedWiring, *, tied: bool) -> None:
         ax.annotate("smooth wave", (end, y), (8, 0), textcoords="offset points", va="center", fontsize=7, color=MUTED)
 
 
-def _legend() -> list[object]:
+def _legend(*, screened: bool) -> list[object]:
     from matplotlib.lines import Line2D
 
     reversed_mark = Line2D([], [], marker="D", ls="", mfc="white", mec=ORANGE, mew=1.4, label="wave reversed")
     return [
         Patch(facecolor=BLUE, edgecolor=INK, label="travel"),
         Patch(facecolor=SKY, edgecolor=INK, hatch="////", label="tied with the best"),
+        *([Patch(facecolor="white", edgecolor=BLUE, label="screened only")] if screened else []),
         reversed_mark,
     ]
 
@@ -82,7 +85,8 @@ def _draw_field(ax: Axes, ranking: Sequence[RankedWiring]) -> None:
     ranks = [row.rank for row in ranking]
     travel = [MM * row.walk.travel_m for row in ranking]
     ax.vlines(ranks, 0.0, travel, color=RULE, lw=1.0)
-    ax.plot(ranks, travel, ls="", marker="o", ms=2.5, color=BLUE)
+    faces = [BLUE if row.settled else "white" for row in ranking]
+    ax.scatter(ranks, travel, s=7, c=faces, edgecolors=BLUE, linewidths=0.6, zorder=2)
     ax.axhline(0.0, color=INK, lw=0.8)
     ax.set_xlabel("rank (–), every wiring that walked")
     ax.set_ylabel("travel (mm\nper period)")

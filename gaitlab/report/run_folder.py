@@ -47,7 +47,7 @@ AGAIN = "run `gaitlab search ROBOT --out FOLDER` to make one"
 class RankedWiring:
     """One line of the ranking: a wiring, how it walked, and the same with the wave reversed where that was run.
 
-    `settled` is false for a wiring that was only screened by a short walk; `smooth` is 1 or −1 for an evenly spaced wave.
+    `settled` is false for a wiring that was only screened by a short or coarse walk; `smooth` is 1 or −1 for an evenly spaced wave.
     """
 
     wiring: Wiring

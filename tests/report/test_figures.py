@@ -99,6 +99,16 @@ def test_a_lonely_best_is_tied_with_nobody(run_folder: Path) -> None:
     assert _texts(figure).count("smooth wave") == 1
 
 
+def test_screened_wirings_are_hollow_and_the_legend_says_so(run_folder: Path) -> None:
+    ranking = read_run(run_folder).ranking
+    assert "screened only" not in _texts(ranking_bars(ranking, limit=6))
+    mixed = [dataclasses.replace(row, settled=row.rank <= 4) for row in ranking]
+    figure = ranking_bars(mixed, limit=6)
+    assert "screened only" in _texts(figure)
+    white = (1.0, 1.0, 1.0, 1.0)
+    assert [patch.get_facecolor() == white for patch in figure.axes[0].patches] == [False] * 4 + [True] * 2
+
+
 def test_rising_phase_of_a_wave_that_rises_at_a_third() -> None:
     phase = np.arange(300) / 300
     row = 1e4 * (1 - np.cos(2 * np.pi * (phase - 1 / 3 + 0.25)))
