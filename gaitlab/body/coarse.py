@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gaitlab.body.coarse_frames import FREE, BoolArray, FloatArray, Frames, IntArray, Skeleton, turned
+from gaitlab.body.drive import torque_per_Pa
 from gaitlab.body.records import GRAVITY_M_S2, BodyModel
 
 # Numerical choices, all by us; tests/benchmarks/coarse_settings.py prints what hangs on them.
@@ -65,7 +66,7 @@ class CoarseBodies:
         self._damping = np.array([joint.damping for joint in joints])
         self._stop_at = np.array([joint.stop_at for joint in joints])
         self._stop_gain = np.array([joint.stop_gain for joint in joints])
-        self._per_Pa = _per_Pa(model)
+        self._per_Pa = torque_per_Pa(model)
         place_m = np.tile([0.0, 0.0, model.start_height_m], (copies, 1))
         self._state = _State(
             place_m,
@@ -281,11 +282,3 @@ def _points(model: BodyModel) -> tuple[IntArray, FloatArray, FloatArray, FloatAr
         mass.append(other.mass_kg)
     coefficients = np.array(friction).reshape(-1, 3) * model.ground_friction
     return np.array(link), np.array(place), np.array(mass), np.array(radius), coefficients
-
-
-def _per_Pa(model: BodyModel) -> FloatArray:
-    per_Pa = np.zeros((len(model.joints), len(model.inlets)))
-    for row, joint in enumerate(model.joints):
-        for inlet, gain in joint.actuation:
-            per_Pa[row, model.inlets.index(inlet)] = gain
-    return per_Pa

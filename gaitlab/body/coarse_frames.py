@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from gaitlab.body.dynamics import ancestry
 from gaitlab.body.records import BodyModel
+from gaitlab.body.rotation import cross
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.intp]
@@ -98,7 +99,7 @@ class Skeleton:
         jacobian[:, :, 0, 5], jacobian[:, :, 1, 5] = -y, x
         axis = frames.axis[:, self._pair_joint]
         arm = points_m[:, self._pair_point] - frames.origin_m[:, self._pair_joint + 1]
-        moved = np.where(self._pair_turns, _cross(axis, arm), axis)
+        moved = np.where(self._pair_turns, cross(axis, arm), axis)
         jacobian[:, self._pair_point, :, FREE + self._pair_joint] = np.swapaxes(moved, 0, 1)
         return jacobian
 
@@ -119,18 +120,14 @@ class Skeleton:
 def turned(turn: FloatArray, by_rad: FloatArray) -> FloatArray:
     """Rotation matrices (B, 3, 3) turned on by rotation vectors (B, 3) in the world (Rodrigues' formula)."""
     angle = np.linalg.norm(by_rad, axis=1) + 1e-300
-    cross = _cross_matrices(by_rad / angle[:, None])
+    across = _cross_matrices(by_rad / angle[:, None])
     sine, versine = np.sin(angle)[:, None, None], (1.0 - np.cos(angle))[:, None, None]
-    return np.asarray((np.eye(3) + sine * cross + versine * (cross @ cross)) @ turn)
+    return np.asarray((np.eye(3) + sine * across + versine * (across @ across)) @ turn)
 
 
 def _along(turn: FloatArray, vector: FloatArray) -> FloatArray:
     """Vectors (m, 3) turned by matrices (B, m, 3, 3)."""
     return np.asarray(np.sum(turn * vector[:, None, :], axis=-1))
-
-
-def _cross(a: FloatArray, b: FloatArray) -> FloatArray:
-    return np.asarray(a[..., [1, 2, 0]] * b[..., [2, 0, 1]] - a[..., [2, 0, 1]] * b[..., [1, 2, 0]])
 
 
 def _cross_matrices(vectors: FloatArray) -> FloatArray:

@@ -28,7 +28,7 @@ class Drive:
 
     def __init__(self, model: BodyModel, *, step_s: float, inertia_factor: float) -> None:
         joints = model.joints
-        self._per_Pa = _per_Pa(model)
+        self._per_Pa = torque_per_Pa(model)
         self._stiffness = np.array([joint.stiffness for joint in joints])
         self._stop_at = np.array([joint.stop_at for joint in joints])
         self._stop_gain = np.array([joint.stop_gain for joint in joints])
@@ -105,7 +105,8 @@ def light_motions(model: BodyModel) -> FloatArray:
     return np.array(columns).reshape(-1, len(model.joints)).T
 
 
-def _per_Pa(model: BodyModel) -> FloatArray:
+def torque_per_Pa(model: BodyModel) -> FloatArray:
+    """Torque or force of every joint by the vacuum at every inlet, (J, inlets) [N m/Pa or N/Pa]."""
     per_Pa = np.zeros((len(model.joints), len(model.inlets)))
     for row, joint in enumerate(model.joints):
         for inlet, gain in joint.actuation:

@@ -25,8 +25,8 @@ def principal(inertia: FloatArray) -> tuple[FloatArray, Quaternion]:
 
 
 def cross(a: FloatArray, b: FloatArray) -> FloatArray:
-    """Cross products of rows (n, 3); a tenth of numpy's overhead on a few rows."""
-    return np.asarray(a[:, [1, 2, 0]] * b[:, [2, 0, 1]] - a[:, [2, 0, 1]] * b[:, [1, 2, 0]])
+    """Cross products of rows (…, 3); a tenth of numpy's overhead on a few rows."""
+    return np.asarray(a[..., [1, 2, 0]] * b[..., [2, 0, 1]] - a[..., [2, 0, 1]] * b[..., [1, 2, 0]])
 
 
 def rotated(quaternion: FloatArray, vector: FloatArray) -> FloatArray:

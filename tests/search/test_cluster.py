@@ -12,12 +12,14 @@ from contextlib import contextmanager
 from pathlib import Path
 
 import pytest
-from search.fakes import by_hash, slowly, task_of
+from search.fakes import by_hash, coarse_or_hash, slowly, task_of
 from search.test_run import searched
 
 from gaitlab.errors import InputError
 from gaitlab.search import cluster
 from gaitlab.search.cluster import Certificates, cluster_workers
+from gaitlab.search.evaluate import Guarded
+from gaitlab.search.strategies.choice import StrategyChoice
 from gaitlab.search.workers import InProcess
 
 TESTS = Path(__file__).parents[1]
@@ -116,6 +118,17 @@ def test_cluster_gives_the_same_bytes_though_a_worker_is_killed(tmp_path: Path) 
         assert searched(tmp_path / "cluster", remote, task=task) == whole
         assert workers[0].wait(10) == -signal.SIGKILL
         assert workers[1].poll() is None
+
+
+@pytest.mark.cluster
+def test_coarse_walks_of_a_cluster_are_those_of_this_machine(tmp_path: Path) -> None:
+    """Real coarse walks in bundles, and made-up settled ones."""
+    task, choice = task_of(), StrategyChoice("screen", 6, 1)
+    here = searched(tmp_path / "here", InProcess(Guarded(coarse_or_hash)), task=task, choice=choice)
+    with running_cluster(tmp_path) as (address, _):
+        remote = cluster_workers(Guarded(coarse_or_hash), address)
+        assert searched(tmp_path / "cluster", remote, task=task, choice=choice) == here
+    assert here.count(b",coarse\n") > 10
 
 
 @pytest.mark.cluster
