@@ -101,8 +101,13 @@ def duration(seconds: float) -> str:
         (2 * 365 * DAY_s, "days", DAY_s),
     ):
         if seconds < limit:
-            return f"{seconds / size:.2g} {unit}"
-    return f"{seconds / (365 * DAY_s):.2g} years"
+            return f"{two_digits(seconds / size)} {unit}"
+    return f"{two_digits(seconds / (365 * DAY_s))} years"
+
+
+def two_digits(value: float) -> str:
+    """A number to two digits, without an exponent."""
+    return f"{float(f'{value:.2g}'):.6g}"
 
 
 def workers() -> None:
