@@ -113,5 +113,10 @@ def _losses() -> tuple[type[BaseException], ...]:
 
 
 def _stopped(executor: Executor, client: Any) -> None:
-    executor.shutdown(wait=False)
+    """Cancels what is still to be done, and closes; with the scheduler gone there is nothing to cancel and nobody to tell."""
+    try:
+        executor.shutdown(wait=False)
+    except Exception:
+        if client.status not in GONE:
+            raise
     client.close()

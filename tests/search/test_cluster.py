@@ -8,6 +8,7 @@ import subprocess
 import sys
 import time
 from collections.abc import Iterator
+from concurrent.futures import ThreadPoolExecutor
 from contextlib import contextmanager
 from pathlib import Path
 
@@ -157,6 +158,30 @@ def test_a_lost_scheduler_ends_the_search_with_what_is_known(tmp_path: Path) -> 
     known = len((tmp_path / "run" / "ranking.csv").read_text().splitlines()) - 1
     assert 40 <= known < 360
     assert searched(tmp_path / "run", InProcess(by_hash), task=task, resume=True) == whole
+
+
+class GoneClient:
+    """A client that has given its scheduler up while its executor was about to cancel what is left."""
+
+    def __init__(self, status: str) -> None:
+        self.status, self.ended = status, False
+
+    def close(self) -> None:
+        self.ended = True
+
+
+class BrokenExecutor(ThreadPoolExecutor):
+    def shutdown(self, wait: bool = True, *, cancel_futures: bool = False) -> None:
+        super().shutdown(wait)
+        raise RuntimeError("Client is closed. Can't send cancel-keys message.")
+
+
+def test_ending_with_the_scheduler_gone_is_no_error_and_anything_else_is() -> None:
+    gone, here = GoneClient("closed"), GoneClient("running")
+    cluster._stopped(BrokenExecutor(1), gone)
+    assert gone.ended
+    with pytest.raises(RuntimeError):
+        cluster._stopped(BrokenExecutor(1), here)
 
 
 @pytest.mark.cluster
