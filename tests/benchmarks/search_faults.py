@@ -4,7 +4,7 @@ Run from the root; every command prints a Markdown table:
 
     python tests/benchmarks/search_faults.py kills         # kill -9 at 20 random moments of a real search, then the ranking
     python tests/benchmarks/search_faults.py memory        # the parent's memory with 100, 10 000 and 100 000 rows
-    python tests/benchmarks/search_faults.py resume        # how long it takes to go on with a million rows
+    python tests/benchmarks/search_faults.py resume        # how long it takes to go on with a million rows; resume=N with N
     python tests/benchmarks/search_faults.py overhead      # the ledger's share of a search's time
 """
 
@@ -151,21 +151,21 @@ def memory() -> None:
         print(f"| {rows} | {float(done.stdout.splitlines()[-1]):.0f} |", flush=True)
 
 
-def resume() -> None:
+def resume(rows: int = MILLION) -> None:
     with tempfile.TemporaryDirectory() as folder:
-        task = filled(Path(folder), MILLION, inlets_per_output_max=6)
+        task = filled(Path(folder), rows, inlets_per_output_max=6)
         begin = time.perf_counter()
         ledger = reopened(Path(folder) / LEDGER_FILE, task.identity)
         opened = time.perf_counter() - begin
         with ledger:
-            run_search(task, Exhaustive(task.space, MILLION), ledger, InProcess(made_up), ignore)
+            run_search(task, Exhaustive(task.space, rows), ledger, InProcess(made_up), ignore)
         gone_on = time.perf_counter() - begin
         ranked(Path(folder), task)
         done = time.perf_counter() - begin
         size = (Path(folder) / LEDGER_FILE).stat().st_size / 1e6
     print("| rows | ledger MB | opened s | all found done s | ranking.csv written s |")
     print("|---|---|---|---|---|")
-    print(f"| {MILLION} | {size:.0f} | {opened:.1f} | {gone_on:.1f} | {done:.1f} |")
+    print(f"| {rows} | {size:.0f} | {opened:.1f} | {gone_on:.1f} | {done:.1f} |")
 
 
 def overhead() -> None:
@@ -190,6 +190,8 @@ def main() -> None:
     word = sys.argv[1] if len(sys.argv) == 2 else ""
     if word.startswith("size="):
         one_size(int(word.removeprefix("size=")))
+    elif word.startswith("resume="):
+        resume(int(word.removeprefix("resume=")))
     elif word in commands:
         commands[word]()
     else:
