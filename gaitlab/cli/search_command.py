@@ -195,7 +195,7 @@ def _certificates(given: dict[str, Any]) -> Certificates | None:
 
 
 class _Watcher:
-    """Moves the bar and keeps the best so far in its note; coarse walks only change the note, they are over so much sooner."""
+    """Moves the bar and keeps the best so far in its note; coarse walks only change the note, their pace is another."""
 
     def __init__(self, bar: Progress, objective: str) -> None:
         self._bar, self._objective = bar, objective

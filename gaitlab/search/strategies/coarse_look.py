@@ -30,11 +30,6 @@ class CoarseLook:
         self._first = list(first)
         self._spread: set[Wiring] = set()
 
-    @property
-    def expected(self) -> int:
-        """How many wirings it will propose."""
-        return self._space.distinct if self._listed is not None else MOST
-
     def next(self) -> list[Wiring]:
         """The next wirings; empty at the end."""
         if self._listed is not None:

@@ -67,7 +67,7 @@ class ScreenSearch:
         self._coarse_done = False
 
     def expected(self) -> int:
-        """Settled walks; coarse ones take a hundredth of the time of a search or a few."""
+        """Settled walks at most. Coarse ones are not counted: each takes a small part of a settled one's time."""
         return self._left
 
     def ask(self) -> Sequence[Ask]:
